@@ -1,0 +1,523 @@
+//! Independent groups, continuous outcome, difference between means, equal variances: the two-sample t test, and its
+//! pairwise form with the standard deviation pooled over all groups.
+//!
+//! For groups `i` and `j` of sizes `n_i`, `n_j` out of `N` units in `k` groups, with common standard deviation `σ`:
+//!
+//! ```text
+//! T = (mean_j − mean_i) / (s √(1/n_i + 1/n_j)),   s² pooled over all groups on ν = N − k degrees of freedom
+//! power, one-sided = P(T(ν, λ) > t)
+//! power, two-sided = P(T(ν, λ) > t) + P(T(ν, λ) < −t),   λ = δ / (σ √(1/n_i + 1/n_j))
+//! ```
+//!
+//! where `t` is the upper `α'/sides` quantile of Student's t with `ν` degrees of freedom and `α'` the level of one
+//! comparison: `α`, `α/m` (Bonferroni) or `1 − (1 − α)^(1/m)` (Šidák) for `m` comparisons. Both rejection regions
+//! count, as they do when the test is run.
+//!
+//! Sources: Cohen (1988), chapter 2; Guenther (1981); Šidák (1967).
+
+use std::sync::Arc;
+
+use schemars::{JsonSchema, Schema, SchemaGenerator};
+use serde::Deserialize;
+use serde_json::json;
+
+use super::inputs::{
+    Compare, DifferenceKeys, Multiplicity, Parallel, ParallelKeys, RiskKeys, Spread, SpreadKeys,
+    StatedRisk, read_difference, read_parallel, read_risk, read_spread,
+};
+use super::problem::{
+    Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook, Trial,
+};
+use super::{Card, Fault, Path, StudyDesign, Tables};
+use crate::numerics::{
+    self, Continuous, NoncentralT, StudentT, normal_cdf, normal_upper_quantile, random::Stream,
+    roots,
+};
+use crate::quantities::{LARGEST_SIZE, Outcome, Risk, Scale, Sides};
+
+static CARD: Card = Card {
+    id: "parallel-means",
+    title: "independent groups, difference between means",
+    structure: "parallel-groups",
+    scale: Scale::Continuous,
+    aim: "detect-difference",
+    analysis: "two-sample-t",
+    sources: &["cohen-1988", "guenther-1981", "sidak-1967"],
+};
+
+/// The registry entry.
+#[derive(Debug)]
+pub struct ParallelMeans;
+
+/// The spec keys of this design.
+#[derive(Debug, Clone, Deserialize, JsonSchema)]
+#[serde(rename_all = "kebab-case")]
+struct Keys {
+    /// How units are divided into groups and which groups are compared.
+    design: ParallelKeys,
+    /// The difference to detect.
+    effect: DifferenceKeys,
+    /// The standard deviation between experimental units within a group.
+    spread: SpreadKeys,
+    /// Error rates.
+    #[serde(default)]
+    risk: RiskKeys,
+}
+
+impl StudyDesign for ParallelMeans {
+    fn card(&self) -> &'static Card {
+        &CARD
+    }
+
+    fn keys(&self, generator: &mut SchemaGenerator) -> Schema {
+        generator.subschema_for::<Keys>()
+    }
+
+    fn read(
+        &self,
+        experiment: &serde_yaml::Value,
+        _outcome: &Outcome,
+        tables: &dyn Tables,
+    ) -> Result<Box<dyn Problem>, Vec<Fault>> {
+        let keys: Keys = serde_yaml::from_value(experiment.clone())
+            .map_err(|error| vec![Fault::key(Path::default(), error.to_string())])?;
+        let parallel = read_parallel(&keys.design);
+        let effect = read_difference(&keys.effect);
+        let spread = read_spread(&keys.spread, tables);
+        let risk = read_risk(&keys.risk);
+        let mut faults = Vec::new();
+        if let (Ok(parallel), Ok(risk)) = (&parallel, &risk) {
+            faults.extend(unprotected(parallel, risk, keys.risk.multiplicity.is_some()));
+        }
+        match (parallel, effect, spread, risk) {
+            (Ok(parallel), Ok(effect), Ok(spread), Ok(risk)) if faults.is_empty() => {
+                Ok(Box::new(Means { parallel, effect, spread, risk, covariates: 0 }))
+            }
+            (parallel, effect, spread, risk) => {
+                faults.extend(parallel.err().into_iter().flatten());
+                faults.extend(effect.err().into_iter().flatten());
+                faults.extend(spread.err().into_iter().flatten());
+                faults.extend(risk.err().into_iter().flatten());
+                Err(faults)
+            }
+        }
+    }
+}
+
+/// Šidák's inequality holds for two-sided statistics and for one-sided ones that are positively correlated, as those
+/// against a common control are; among all pairs some are negatively correlated, so the family would be unprotected.
+fn unprotected(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option<Fault> {
+    let alone = parallel.pairs.len() == 1;
+    let at = Path::of("risk.multiplicity");
+    if alone && stated {
+        return Some(
+            Fault::key(
+                at,
+                "there is one comparison, so there is no multiplicity to protect against",
+            )
+            .help("drop `multiplicity`"),
+        );
+    }
+    let sidak_one_sided = risk.multiplicity == Multiplicity::Sidak
+        && risk.risk.sides == Sides::One
+        && parallel.compare == Compare::AllPairs
+        && !alone;
+    sidak_one_sided.then(|| {
+        Fault::value(
+            at,
+            "the Šidák level is not proved to protect one-sided comparisons of all pairs",
+        )
+        .help("choose `bonferroni`, or test two-sided")
+    })
+}
+
+/// The design with its numbers.
+#[derive(Debug, Clone)]
+struct Means {
+    parallel: Parallel,
+    effect: Effect,
+    spread: Spread,
+    risk: StatedRisk,
+    /// Baseline covariates in the model; each costs a degree of freedom.
+    covariates: u64,
+}
+
+impl Means {
+    /// Number of comparisons.
+    fn comparisons(&self) -> usize {
+        self.parallel.pairs.len()
+    }
+
+    /// Level of one comparison.
+    fn alpha_each(&self) -> f64 {
+        let alpha = self.risk.risk.alpha.get();
+        let count = self.comparisons() as f64;
+        match self.risk.multiplicity {
+            _ if self.comparisons() == 1 => alpha,
+            Multiplicity::EachAtAlpha => alpha,
+            Multiplicity::Bonferroni => alpha / count,
+            Multiplicity::Sidak => -libm::expm1(libm::log1p(-alpha) / count),
+        }
+    }
+
+    fn tail(&self) -> f64 {
+        self.alpha_each() / self.risk.risk.sides.count()
+    }
+
+    fn degrees_of_freedom(&self, sizes: &Sizes) -> f64 {
+        let parameters = self.parallel.groups.len() as u64 + self.covariates;
+        sizes.total.saturating_sub(parameters) as f64
+    }
+
+    fn critical(&self, sizes: &Sizes) -> numerics::Result<f64> {
+        StudentT::new(self.degrees_of_freedom(sizes))?.upper_quantile(self.tail())
+    }
+
+    /// `√(1/n_i + 1/n_j)` of a pair.
+    fn pair_factor(&self, sizes: &Sizes, (i, j): (usize, usize)) -> f64 {
+        let reciprocal =
+            |g: usize| sizes.per_group.get(g).map_or(f64::INFINITY, |n| 1.0 / *n as f64);
+        (reciprocal(i) + reciprocal(j)).sqrt()
+    }
+
+    /// Position of the comparison with the least power: the one between the smallest groups, the first of equals.
+    fn weakest_pair(&self, sizes: &Sizes) -> usize {
+        let mut weakest = (0, 0.0);
+        for (position, pair) in self.parallel.pairs.iter().enumerate() {
+            let factor = self.pair_factor(sizes, *pair);
+            if factor > weakest.1 {
+                weakest = (position, factor);
+            }
+        }
+        weakest.0
+    }
+
+    /// The largest `√(1/n_i + 1/n_j)`.
+    fn weakest_factor(&self, sizes: &Sizes) -> f64 {
+        self.parallel.pairs.iter().map(|p| self.pair_factor(sizes, *p)).fold(0.0, f64::max)
+    }
+
+    /// The same for sizes relative to the smallest group, as the textbook formula takes it.
+    fn relative_factor(&self) -> f64 {
+        let smallest = self.parallel.smallest_weight();
+        let share = |g: usize| self.parallel.groups.get(g).map_or(1.0, |g| g.weight / smallest);
+        let of_pair = |&(i, j): &(usize, usize)| (1.0 / share(i) + 1.0 / share(j)).sqrt();
+        self.parallel.pairs.iter().map(of_pair).fold(0.0, f64::max)
+    }
+
+    fn power_at(&self, df: f64, critical: f64, noncentrality: f64) -> numerics::Result<f64> {
+        let t = NoncentralT::new(df, noncentrality)?;
+        let upper = t.sf(critical)?;
+        Ok(match self.risk.risk.sides {
+            Sides::One => upper,
+            Sides::Two => upper + t.cdf(-critical)?,
+        })
+    }
+
+    fn normal_quantiles(&self) -> numerics::Result<(f64, f64)> {
+        let z_alpha = normal_upper_quantile(self.tail())?;
+        let z_beta = normal_upper_quantile(1.0 - self.risk.risk.power.get())?;
+        Ok((z_alpha, z_beta))
+    }
+
+    /// The sizes that belong to an unrounded size of the smallest group: each group rounded up on its own.
+    fn rounded_up(&self, step: f64) -> Option<Sizes> {
+        let step = step.max(self.smallest_step() as f64);
+        if step > LARGEST_SIZE as f64 {
+            return None;
+        }
+        let smallest = self.parallel.smallest_weight();
+        let up =
+            |g: &Group| (step * (g.weight / smallest) * (1.0 - 4.0 * f64::EPSILON)).ceil() as u64;
+        let per_group: Vec<_> = self.parallel.groups.iter().map(up).collect();
+        let total = per_group.iter().sum();
+        Some(Sizes { step: step.ceil() as u64, per_group, total })
+    }
+
+    fn changed(&self, change: impl FnOnce(&mut Self)) -> Box<dyn Problem> {
+        let mut other = self.clone();
+        change(&mut other);
+        Box::new(other)
+    }
+}
+
+impl Problem for Means {
+    fn card(&self) -> &'static Card {
+        &CARD
+    }
+
+    fn groups(&self) -> &[Group] {
+        &self.parallel.groups
+    }
+
+    fn risk(&self) -> Risk {
+        self.risk.risk
+    }
+
+    fn effect(&self) -> &Effect {
+        &self.effect
+    }
+
+    fn spread(&self) -> &Spread {
+        &self.spread
+    }
+
+    fn smallest_step(&self) -> u64 {
+        2
+    }
+
+    fn sizes(&self, step: u64) -> Option<Sizes> {
+        self.parallel.sizes(step)
+    }
+
+    fn power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64> {
+        let noncentrality = at.effect / (at.nuisance * self.weakest_factor(sizes));
+        self.power_at(self.degrees_of_freedom(sizes), self.critical(sizes)?, noncentrality)
+    }
+
+    fn detectable(&self, sizes: &Sizes, nuisance: f64, power: f64) -> numerics::Result<f64> {
+        let df = self.degrees_of_freedom(sizes);
+        let critical = self.critical(sizes)?;
+        let gap = |noncentrality: f64| Ok(self.power_at(df, critical, noncentrality)? - power);
+        let what = "detectable difference";
+        let start = critical + normal_upper_quantile(1.0 - power)?.max(0.0);
+        let bracket = roots::bracket_around(what, start, 0.5, (0.0, 1e12), gap)?;
+        let root = roots::refine(what, bracket, roots::Tolerance::default(), gap)?;
+        Ok(root.at * nuisance * self.weakest_factor(sizes))
+    }
+
+    fn textbook(&self, at: Point) -> numerics::Result<Option<Textbook>> {
+        let (z_alpha, z_beta) = self.normal_quantiles()?;
+        let hundredths = |z: f64| (z * 100.0).round() / 100.0;
+        let ratio = at.nuisance * self.relative_factor() / at.effect;
+        let size = |a: f64, b: f64| ((a + b) * ratio) * ((a + b) * ratio);
+        let step = size(z_alpha, z_beta);
+        Ok(self.rounded_up(step).map(|sizes| Textbook {
+            step,
+            step_with_table_quantiles: size(hundredths(z_alpha), hundredths(z_beta)),
+            z_alpha,
+            z_beta,
+            sizes,
+        }))
+    }
+
+    fn textbook_power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64> {
+        let (z_alpha, _) = self.normal_quantiles()?;
+        Ok(normal_cdf(at.effect / (at.nuisance * self.weakest_factor(sizes)) - z_alpha))
+    }
+
+    fn textbook_detectable(&self, sizes: &Sizes, nuisance: f64) -> numerics::Result<f64> {
+        let (z_alpha, z_beta) = self.normal_quantiles()?;
+        Ok((z_alpha + z_beta) * nuisance * self.weakest_factor(sizes))
+    }
+
+    fn trial(&self, sizes: &Sizes, at: Point) -> numerics::Result<Box<dyn Trial>> {
+        let weakest = self.weakest_pair(sizes);
+        let apart = self.parallel.pairs.get(weakest).map_or(0, |pair| pair.1);
+        let all_apart = self.parallel.compare == Compare::AgainstControl;
+        let control = |g: usize| self.parallel.groups.get(g).is_some_and(|g| g.control);
+        let raised = |g: usize| if all_apart { !control(g) } else { g == apart };
+        let shift = at.effect / at.nuisance;
+        let comparisons = self.parallel.pairs.iter().map(|&(i, j)| Comparison {
+            first: i,
+            second: j,
+            factor: self.pair_factor(sizes, (i, j)),
+            shift: shift * (f64::from(raised(j)) - f64::from(raised(i))),
+        });
+        Ok(Box::new(MeansTrial {
+            sizes: sizes.per_group.iter().map(|n| *n as usize).collect(),
+            df: self.degrees_of_freedom(sizes),
+            critical: self.critical(sizes)?,
+            two_sided: self.risk.risk.sides == Sides::Two,
+            comparisons: comparisons.collect::<Vec<_>>().into(),
+            weakest,
+        }))
+    }
+
+    fn rivals(&self) -> numerics::Result<Vec<Rival>> {
+        let mut rivals = Vec::new();
+        let risk = self.risk.risk;
+        if self.parallel.is_balanced()
+            && let Some(textbook) = self.textbook(self.planned())?
+        {
+            let step = textbook.step + textbook.z_alpha * textbook.z_alpha / 4.0;
+            rivals.extend(self.formula("guenther", "guenther-1981", step));
+            let conventional = risk.sides == Sides::Two && risk.alpha.get() == 0.05;
+            let at = self.planned();
+            let multiplier = match risk.power.get() {
+                0.8 => Some(16.0),
+                0.9 => Some(21.0),
+                _ => None,
+            };
+            if let (true, 1, Some(multiplier)) = (conventional, self.comparisons(), multiplier) {
+                let ratio = at.nuisance / at.effect;
+                rivals.extend(self.formula("lehr", "lehr-1992", multiplier * ratio * ratio));
+            }
+        }
+        if self.comparisons() > 1 {
+            for (id, other) in [
+                ("each-at-alpha", Multiplicity::EachAtAlpha),
+                ("bonferroni", Multiplicity::Bonferroni),
+                ("sidak", Multiplicity::Sidak),
+            ] {
+                let mut problem = self.clone();
+                problem.risk.multiplicity = other;
+                if other != self.risk.multiplicity
+                    && unprotected(&problem.parallel, &problem.risk, true).is_none()
+                {
+                    let answer = RivalAnswer::Exact(Box::new(problem));
+                    rivals.push(Rival { id, source: None, answer });
+                }
+            }
+        }
+        Ok(rivals)
+    }
+
+    fn levers(&self) -> Vec<Lever> {
+        let mut levers = Vec::new();
+        for correlation in [0.5_f64, 0.7] {
+            let problem = self.changed(|p| {
+                p.covariates += 1;
+                p.spread.sd *= (1.0 - correlation * correlation).sqrt();
+            });
+            levers.push(Lever { id: "covariate", value: Some(correlation), problem });
+        }
+        let problem = self.changed(|p| p.spread.sd *= 0.8);
+        levers.push(Lever { id: "sharper-measurement", value: Some(0.2), problem });
+        if !self.parallel.is_balanced() {
+            let even = self.changed(|p| p.parallel.groups.iter_mut().for_each(|g| g.weight = 1.0));
+            levers.push(Lever { id: "equal-groups", value: None, problem: even });
+        } else if self.parallel.compare == Compare::AgainstControl && self.comparisons() > 1 {
+            let root = (self.comparisons() as f64).sqrt();
+            let weight = (root * 10.0).round() / 10.0;
+            let problem = self.changed(|p| {
+                p.parallel.groups.iter_mut().filter(|g| g.control).for_each(|g| g.weight = weight);
+            });
+            levers.push(Lever { id: "larger-control", value: Some(weight), problem });
+        }
+        let directed = self.comparisons() == 1 || self.parallel.compare == Compare::AgainstControl;
+        if self.risk.risk.sides == Sides::Two && directed {
+            let problem = self.changed(|p| p.risk.risk.sides = Sides::One);
+            levers.push(Lever { id: "one-sided", value: None, problem });
+        }
+        levers
+    }
+
+    fn facts(&self, sizes: &Sizes) -> numerics::Result<Facts> {
+        let df = self.degrees_of_freedom(sizes);
+        let critical = self.critical(sizes)?;
+        let at = self.planned();
+        let mut comparisons = Vec::new();
+        for &(i, j) in &self.parallel.pairs {
+            let factor = self.pair_factor(sizes, (i, j));
+            let noncentrality = at.effect / (at.nuisance * factor);
+            comparisons.push(json!({
+                "first": i,
+                "second": j,
+                "noncentrality": noncentrality,
+                "power": self.power_at(df, critical, noncentrality)?,
+            }));
+        }
+        let weakest = self.weakest_pair(sizes);
+        let facts = json!({
+            "compare": self.parallel.compare,
+            "allocation_why": self.parallel.allocation_why,
+            "balanced": self.parallel.is_balanced(),
+            "multiplicity": self.risk.multiplicity,
+            "risk": self.risk,
+            "alpha_each": self.alpha_each(),
+            "rising": self.effect.planned.value > 0.0,
+            "degrees_of_freedom": df,
+            "critical": critical,
+            "standardised": at.effect / at.nuisance,
+            "weakest": weakest,
+            "noncentrality": at.effect / (at.nuisance * self.weakest_factor(sizes)),
+            "relative_factor_squared": self.relative_factor() * self.relative_factor(),
+            "comparisons": comparisons,
+        });
+        Ok(match facts {
+            serde_json::Value::Object(map) => map,
+            _ => Facts::new(),
+        })
+    }
+}
+
+impl Means {
+    fn formula(&self, id: &'static str, source: &'static str, step: f64) -> Option<Rival> {
+        let sizes = self.rounded_up(step)?;
+        Some(Rival { id, source: Some(source), answer: RivalAnswer::Formula { step, sizes } })
+    }
+}
+
+/// One comparison of a simulated study, in units of the standard deviation.
+#[derive(Debug, Clone, Copy)]
+struct Comparison {
+    first: usize,
+    second: usize,
+    factor: f64,
+    shift: f64,
+}
+
+/// A simulated study: standard normal raw data, the t statistics of every comparison.
+#[derive(Debug)]
+struct MeansTrial {
+    sizes: Vec<usize>,
+    df: f64,
+    critical: f64,
+    two_sided: bool,
+    comparisons: Arc<[Comparison]>,
+    weakest: usize,
+}
+
+impl Trial for MeansTrial {
+    fn comparisons(&self) -> usize {
+        self.comparisons.len()
+    }
+
+    fn weakest(&self) -> usize {
+        self.weakest
+    }
+
+    fn differing(&self) -> Vec<bool> {
+        self.comparisons.iter().map(|c| c.shift != 0.0).collect()
+    }
+
+    fn values(&self) -> usize {
+        self.sizes.iter().sum()
+    }
+
+    fn run(
+        &self,
+        stream: &mut Stream,
+        scratch: &mut Vec<f64>,
+        planned: &mut [bool],
+        null: &mut [bool],
+    ) {
+        let values = self.values();
+        scratch.resize(values + self.sizes.len(), 0.0);
+        let (data, means) = scratch.split_at_mut(values);
+        stream.fill_normal(data);
+        let mut squares = 0.0;
+        let mut rest: &[f64] = data;
+        for (size, mean) in self.sizes.iter().zip(means.iter_mut()) {
+            let (own, others) = rest.split_at(*size);
+            rest = others;
+            let (mut sum, mut own_squares) = (0.0, 0.0);
+            for value in own {
+                sum += value;
+                own_squares += value * value;
+            }
+            *mean = sum / *size as f64;
+            squares += own_squares - sum * *mean;
+        }
+        let pooled = (squares / self.df).sqrt();
+        for ((comparison, planned), null) in self.comparisons.iter().zip(planned).zip(null) {
+            let mean = |g: usize| means.get(g).copied().unwrap_or(0.0);
+            let difference = mean(comparison.second) - mean(comparison.first);
+            let limit = self.critical * pooled * comparison.factor;
+            let rejects = |d: f64| if self.two_sided { d.abs() > limit } else { d > limit };
+            *planned = rejects(difference + comparison.shift);
+            *null = rejects(difference);
+        }
+    }
+}

@@ -1,0 +1,257 @@
+//! The noncentral t distribution.
+
+use super::invert::{POSITIVE_RANGE, Scale, beyond_range, monotone_root};
+use super::noncentral_t_integrals::{central_moment_integral, normal_order, scale_order};
+use super::student_t::StudentT;
+use super::{Continuous, degrees_of_freedom, number, probability};
+use crate::numerics::error::{NumericsError, Result};
+use crate::numerics::scaled::{Scaled, Tails};
+use crate::numerics::special::beta::{BetaFamily, BetaPoint};
+use crate::numerics::special::normal::{normal_cdf, normal_ln_sf, normal_quantile_guess};
+use crate::numerics::special::poisson_mixture::{Weights, lower_sum, upper_sum};
+
+/// Distribution of `(Z + ncp) / sqrt(V / df)` with `Z` standard normal and `V` an independent chi-squared with `df` degrees of freedom.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct NoncentralT {
+    df: f64,
+    ncp: f64,
+    central: StudentT,
+}
+
+/// Largest size of the noncentrality; the argument of the distribution is known to 1e-8 of a standard deviation there.
+pub const LARGEST_T_NONCENTRALITY: f64 = 1e8;
+
+/// Below this the scale `s` spreads over so many powers of ten that its integrals become too long.
+pub const LEAST_DEGREES_OF_FREEDOM: f64 = 0.01;
+
+/// Above this noncentrality the tails come by quadrature instead of series.
+const SERIES_LIMIT: f64 = 12.0;
+
+/// Beyond this multiple of the noncentrality, scaled by the degrees of freedom, the upper tail is its leading power.
+const POWER_TAIL: f64 = 1e9;
+
+impl NoncentralT {
+    /// The distribution with `df > 0` degrees of freedom and noncentrality `ncp` of either sign.
+    pub fn new(df: f64, ncp: f64) -> Result<Self> {
+        let df = degrees_of_freedom("df", df)?;
+        if df < LEAST_DEGREES_OF_FREEDOM {
+            return Err(NumericsError::OutOfDomain { name: "df", given: df, allowed: "between 0.01 and 1e18" });
+        }
+        if ncp.is_nan() || ncp.abs() > LARGEST_T_NONCENTRALITY {
+            return Err(NumericsError::OutOfDomain {
+                name: "ncp",
+                given: ncp,
+                allowed: "between -1e8 and 1e8",
+            });
+        }
+        Ok(Self { df, ncp, central: StudentT::new(df)? })
+    }
+
+    /// The noncentrality at which `P(T > x) = p`.
+    pub fn ncp_for_sf(df: f64, x: f64, p: f64) -> Result<f64> {
+        let p = probability(p)?;
+        if p > 0.5 {
+            Self::solve_ncp(df, x, 1.0 - p, false, p)
+        } else {
+            Self::solve_ncp(df, x, p, true, p)
+        }
+    }
+
+    /// The noncentrality at which `P(T <= x) = p`.
+    pub fn ncp_for_cdf(df: f64, x: f64, p: f64) -> Result<f64> {
+        let p = probability(p)?;
+        if p > 0.5 {
+            Self::solve_ncp(df, x, 1.0 - p, true, p)
+        } else {
+            Self::solve_ncp(df, x, p, false, p)
+        }
+    }
+
+    /// The noncentrality at which the named tail at `x` is `p <= 1/2`.
+    fn solve_ncp(df: f64, x: f64, p: f64, upper: bool, given: f64) -> Result<f64> {
+        let df = degrees_of_freedom("df", df)?;
+        if !x.is_finite() {
+            return Err(NumericsError::OutOfDomain { name: "x", given: x, allowed: "finite" });
+        }
+        if p == 0.0 {
+            return Err(NumericsError::OutOfDomain {
+                name: "p",
+                given,
+                allowed: "above 0 and below 1",
+            });
+        }
+        let target = libm::log(p);
+        let z = normal_quantile_guess(p);
+        let spread = (1.0 + x * (x / (2.0 * df))).sqrt();
+        let guess = if upper { x + z * spread } else { x - z * spread };
+        let limit = LARGEST_T_NONCENTRALITY;
+        monotone_root(
+            "noncentrality of t",
+            Scale::Linear,
+            guess.clamp(-limit, limit),
+            (-limit, limit),
+            |ncp| {
+                let distribution = Self::new(df, ncp)?;
+                let tails = distribution.tails(x);
+                let (ln, sign) =
+                    if upper { (tails.ln_upper(), 1.0) } else { (tails.ln_lower(), -1.0) };
+                Ok((ln - target, sign * libm::exp(distribution.ln_integral(x, 0.0) - ln)))
+            },
+        )
+    }
+
+    /// Both tails at `t`, the smaller one directly.
+    pub(crate) fn tails(&self, t: f64) -> Tails {
+        if t < 0.0 {
+            return self.mirrored().tails(-t).swapped();
+        }
+        if t == f64::INFINITY {
+            return Tails::Upper(Scaled::ZERO);
+        }
+        if self.ncp == 0.0 {
+            return self.central.tails(t);
+        }
+        if t == 0.0 {
+            let (exponent, upper) = (normal_ln_sf(self.ncp.abs()), self.ncp < 0.0);
+            let tail = Scaled { factor: 1.0, exponent };
+            return if upper { Tails::Upper(tail) } else { Tails::Lower(tail) };
+        }
+        let far = self.far();
+        if t > far {
+            let tail = self.tails(far).upper_scaled();
+            return Tails::Upper(tail.times_exp(self.df * (libm::log(far) - libm::log(t))));
+        }
+        if self.ncp > 0.0 && self.ncp <= SERIES_LIMIT {
+            return self.series(t);
+        }
+        self.integral(t, t > self.ncp)
+    }
+
+    fn mirrored(&self) -> Self {
+        Self { ncp: -self.ncp, ..*self }
+    }
+
+    /// Where the upper tail has become its leading power `t^-df`.
+    fn far(&self) -> f64 {
+        POWER_TAIL * (self.ncp.abs() + 10.0) * (1.0 + self.df)
+    }
+
+    /// Mixture of incomplete beta functions, all terms positive: `t > 0`, `0 < ncp <= SERIES_LIMIT`.
+    fn series(&self, t: f64) -> Tails {
+        let w = 0.5 * self.ncp * self.ncp;
+        let b = 0.5 * self.df;
+        let odds = 0.5 * t * t;
+        let even = BetaFamily(BetaPoint::new(0.5, b, odds, odds - 0.5));
+        let odd = BetaFamily(BetaPoint::new(1.0, b, odds, odds - 1.0));
+        let (even_weights, odd_weights) = (Weights { q: 0.0, w }, Weights { q: 0.5, w });
+        if odds < 0.5 + w {
+            let sum = lower_sum(even, even_weights).plus(lower_sum(odd, odd_weights)).times(0.5);
+            Tails::Lower(sum.plus(Scaled { factor: 1.0, exponent: normal_ln_sf(self.ncp) }))
+        } else {
+            let sum = upper_sum(even, even_weights).plus(upper_sum(odd, odd_weights));
+            Tails::Upper(sum.times(0.5))
+        }
+    }
+
+    /// One tail as an integral whose integrand is positive everywhere: for any noncentrality, `t > 0`.
+    fn integral(&self, t: f64, upper: bool) -> Tails {
+        let narrow = t * t > 4.5 * self.df;
+        let tail = if self.ncp > SERIES_LIMIT && narrow {
+            normal_order(self.df, self.ncp, t, upper)
+        } else {
+            scale_order(self.df, self.ncp, t, upper)
+        };
+        if upper { Tails::Upper(tail) } else { Tails::Lower(tail) }
+    }
+
+    /// `ln ∫ s^power φ(x s - ncp) f(s) ds`: the density for `power` 1, the slope of the upper tail in `ncp` for 0.
+    fn ln_integral(&self, x: f64, power: f64) -> f64 {
+        let far = self.far();
+        if x.abs() > far {
+            let rest = (self.df + power) * (libm::log(far) - libm::log(x.abs()));
+            return self.ln_integral(far.copysign(x), power) + rest;
+        }
+        central_moment_integral(self.df, self.ncp, x, power).ln()
+    }
+
+    /// The point whose named tail is `p <= 1/2`.
+    fn solve(&self, p: f64, upper: bool) -> Result<f64> {
+        if p == 0.0 {
+            return Ok(if upper { f64::INFINITY } else { f64::NEG_INFINITY });
+        }
+        let at_zero = if upper { normal_cdf(self.ncp) } else { normal_cdf(-self.ncp) };
+        if p == at_zero {
+            return Ok(0.0);
+        }
+        // The point is positive where the upper tail has to shrink from its value at 0, or the lower one to grow.
+        if (p < at_zero) == upper {
+            self.solve_positive(p, upper)
+        } else {
+            Ok(-self.mirrored().solve_positive(p, !upper)?)
+        }
+    }
+
+    fn solve_positive(&self, p: f64, upper: bool) -> Result<f64> {
+        let target = libm::log(p);
+        let z = if upper { -normal_quantile_guess(p) } else { normal_quantile_guess(p) };
+        let half = z * z / (2.0 * self.df);
+        let spread = (1.0 + self.ncp * self.ncp / (2.0 * self.df) - half).max(0.0).sqrt();
+        let guess =
+            if half < 0.8 { (self.ncp + z * spread) / (1.0 - half) } else { self.ncp.abs() + 10.0 };
+        let what = "quantile of noncentral t";
+        beyond_range(monotone_root(
+            what,
+            Scale::Logarithmic,
+            guess.max(1e-3),
+            POSITIVE_RANGE,
+            |x| {
+                let tails = self.tails(x);
+                let (ln, sign) =
+                    if upper { (tails.ln_upper(), -1.0) } else { (tails.ln_lower(), 1.0) };
+                Ok((ln - target, sign * libm::exp(self.ln_integral(x, 1.0) + libm::log(x) - ln)))
+            },
+        ))
+    }
+}
+
+impl Continuous for NoncentralT {
+    fn ln_density(&self, x: f64) -> Result<f64> {
+        let x = number("x", x)?;
+        if self.ncp == 0.0 {
+            return self.central.ln_density(x);
+        }
+        Ok(if x.is_finite() { self.ln_integral(x, 1.0) } else { f64::NEG_INFINITY })
+    }
+
+    fn cdf(&self, x: f64) -> Result<f64> {
+        Ok(self.tails(number("x", x)?).lower())
+    }
+
+    fn sf(&self, x: f64) -> Result<f64> {
+        Ok(self.tails(number("x", x)?).upper())
+    }
+
+    fn ln_cdf(&self, x: f64) -> Result<f64> {
+        Ok(self.tails(number("x", x)?).ln_lower())
+    }
+
+    fn ln_sf(&self, x: f64) -> Result<f64> {
+        Ok(self.tails(number("x", x)?).ln_upper())
+    }
+
+    fn quantile(&self, p: f64) -> Result<f64> {
+        let p = probability(p)?;
+        if self.ncp == 0.0 {
+            return self.central.quantile(p);
+        }
+        if p > 0.5 { self.solve(1.0 - p, true) } else { self.solve(p, false) }
+    }
+
+    fn upper_quantile(&self, p: f64) -> Result<f64> {
+        let p = probability(p)?;
+        if self.ncp == 0.0 {
+            return self.central.upper_quantile(p);
+        }
+        if p > 0.5 { self.solve(1.0 - p, false) } else { self.solve(p, true) }
+    }
+}

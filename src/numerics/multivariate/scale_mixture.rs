@@ -1,0 +1,275 @@
+//! Statistics divided by an independent estimate of the standard deviation.
+//!
+//! If `H(w)` is a probability when the standard deviation is known, then with `s = sqrt(χ²_ν / ν)` estimated it is
+//! `E[H(c s)]`. This file evaluates that mean, and inverts it in `c`.
+
+use crate::numerics::error::{NumericsError, Result};
+use crate::numerics::roots::{Tolerance, bracket_around, refine};
+use crate::numerics::special::gamma::stirling_remainder;
+use crate::numerics::special::logarithms::ln_1p_minus;
+use libm::{exp, expm1, log, log1p};
+use std::collections::BTreeMap;
+
+/// What is left out on either side of the sum, relative to it.
+const NEGLIGIBLE: f64 = 1e-17;
+
+/// From these degrees of freedom on the grid is laid anew around the root, to keep rounding of `ln c` out of it.
+const FINE_GRID_FROM: f64 = 1e4;
+
+/// One tail of a statistic with known standard deviation, as a function of the critical value.
+///
+/// `inner` is monotone on each side of 0 and accurate relative to its own size.
+pub(super) struct Tail<F> {
+    pub(super) inner: F,
+    /// The tail at critical value 0.
+    pub(super) at_zero: f64,
+    /// The tail at an infinite critical value of the sign in question.
+    pub(super) at_infinity: f64,
+}
+
+/// Mean of a tail over the estimated standard deviation, on a grid of critical values that later calls reuse.
+///
+/// # Method
+///
+/// Trapezoidal rule in `u = ln s`, where the density of `u` decays exponentially to the left and doubly exponentially
+/// to the right, with the step halved until two sums agree: halving squares the error of this rule, so that the last
+/// sum is accurate to rounding. The grid is fixed in `ln(c s)`, so that a search in `c` evaluates the tail only once a
+/// grid point.
+pub(super) struct ScaleMixture<F> {
+    tail: Tail<F>,
+    df: f64,
+    first_step: f64,
+    peak: f64,
+    anchor: f64,
+    /// The tail at `anchor * exp(key * finest step)`.
+    seen: BTreeMap<i64, f64>,
+}
+
+impl<F: Fn(f64) -> Result<f64>> ScaleMixture<F> {
+    /// Halvings of the first step at most.
+    const LEVELS: u32 = 10;
+
+    /// Relative agreement of two sums, of which the finer one is then far more accurate.
+    const AGREEMENT: f64 = 1e-10;
+
+    /// Relative agreement that is accepted once halving the step no longer betters it.
+    const ROUNDED: f64 = 1e-7;
+
+    /// `anchor` is a critical value of the sign and rough size of those to come, not 0; `shift` is the largest
+    /// critical value around which the tail turns, other than those near 0.
+    pub(super) fn new(tail: Tail<F>, df: f64, anchor: f64, shift: f64) -> Self {
+        // The first bound resolves the double exponential, the second the bell of width 1 / sqrt(2 ν) and a turn
+        // of width 1 / δ.
+        let first_step = f64::min(0.13, 0.65 / (df + 0.5 * shift * shift).sqrt());
+        let peak = (df / std::f64::consts::PI).sqrt() * exp(-stirling_remainder(0.5 * df));
+        ScaleMixture { tail, df, first_step, peak, anchor, seen: BTreeMap::new() }
+    }
+
+    /// The mean of the tail at the critical value `c`, which has the sign of the anchor.
+    pub(super) fn at(&mut self, c: f64) -> Result<f64> {
+        if c == 0.0 {
+            return Ok(self.tail.at_zero);
+        }
+        if self.df == f64::INFINITY {
+            return (self.tail.inner)(c);
+        }
+        if c.is_infinite() {
+            return Ok(self.tail.at_infinity);
+        }
+        let ratio = c / self.anchor;
+        let shift = if ratio > 0.5 && ratio < 2.0 {
+            log1p((c - self.anchor) / self.anchor)
+        } else {
+            log(c.abs()) - log(self.anchor.abs())
+        };
+        let mut sum = self.sum(Grid::whole(self.first_step, Self::LEVELS), shift)?;
+        let mut step = self.first_step;
+        let mut last_difference = f64::INFINITY;
+        for level in (0..Self::LEVELS).rev() {
+            step *= 0.5;
+            let between = self.sum(Grid::odd(step, level), shift)?;
+            let difference = (between - sum).abs() / (between + sum + f64::MIN_POSITIVE / step);
+            // Far out in a tail of thousands of means rounding keeps the sums from agreeing any better.
+            let rounded = difference < Self::ROUNDED && difference > 0.25 * last_difference;
+            sum += between;
+            if difference <= Self::AGREEMENT || rounded {
+                return Ok(sum * step);
+            }
+            last_difference = difference;
+        }
+        Err(NumericsError::NoConvergence {
+            what: "mean over the estimated standard deviation",
+            low: c,
+            high: c,
+            evaluations: self.seen.len(),
+        })
+    }
+
+    fn sum(&mut self, grid: Grid, shift: f64) -> Result<f64> {
+        let start = grid.nearest(shift);
+        let mut sum = 0.0;
+        self.add_to_the_right(&grid, start, shift, &mut sum)?;
+        self.add_to_the_left(&grid, start - grid.stride, shift, &mut sum)?;
+        Ok(sum)
+    }
+
+    fn add_to_the_right(
+        &mut self,
+        grid: &Grid,
+        from: f64,
+        shift: f64,
+        sum: &mut f64,
+    ) -> Result<()> {
+        let spacing = grid.step * grid.stride;
+        let mut j = from;
+        loop {
+            let u = j * grid.step - shift;
+            let weight = self.density(u);
+            let here = self.tail_at(grid, j)?;
+            *sum += weight * here;
+            // Beyond u the density falls at least as fast as at rate ν (e^2u - 1) and the tail is monotone.
+            let rate = self.df * expm1(2.0 * u);
+            let bound = weight * here.max(self.tail.at_infinity);
+            if weight == 0.0 || (u > 0.0 && bound <= NEGLIGIBLE * *sum * rate * spacing) {
+                return Ok(());
+            }
+            j += grid.stride;
+        }
+    }
+
+    fn add_to_the_left(&mut self, grid: &Grid, from: f64, shift: f64, sum: &mut f64) -> Result<()> {
+        let spacing = grid.step * grid.stride;
+        let mut j = from;
+        let mut at_limit = false;
+        loop {
+            let weight = self.density(j * grid.step - shift);
+            let here = if at_limit { self.tail.at_zero } else { self.tail_at(grid, j)? };
+            *sum += weight * here;
+            // Being monotone, the tail stays where it is once it has met its limit at 0.
+            at_limit |= (here - self.tail.at_zero).abs() <= NEGLIGIBLE * self.tail.at_zero;
+            let bound = weight * here.max(self.tail.at_zero);
+            if weight == 0.0 || bound <= NEGLIGIBLE * *sum * self.df * spacing {
+                return Ok(());
+            }
+            j -= grid.stride;
+        }
+    }
+
+    /// Density of `u = ln s`: `sqrt(ν/π) exp(-σ(ν/2)) exp(ν/2 (ln(1+x) - x))`, `x = e^2u - 1`, `σ` Stirling's remainder.
+    fn density(&self, u: f64) -> f64 {
+        self.peak * exp(0.5 * self.df * ln_1p_minus_of_square(u))
+    }
+
+    fn tail_at(&mut self, grid: &Grid, j: f64) -> Result<f64> {
+        let key = (j as i64) << grid.level;
+        if let Some(&known) = self.seen.get(&key) {
+            return Ok(known);
+        }
+        let value = (self.tail.inner)(self.anchor * exp(j * grid.step))?;
+        self.seen.insert(key, value);
+        Ok(value)
+    }
+}
+
+/// The points `j * step` with every `j`, or with odd ones only.
+struct Grid {
+    step: f64,
+    stride: f64,
+    /// How many halvings are left to the finest step.
+    level: u32,
+}
+
+impl Grid {
+    fn whole(step: f64, level: u32) -> Self {
+        Grid { step, stride: 1.0, level }
+    }
+
+    fn odd(step: f64, level: u32) -> Self {
+        Grid { step, stride: 2.0, level }
+    }
+
+    /// The `j` of the grid nearest to `u`.
+    fn nearest(&self, u: f64) -> f64 {
+        let first = self.stride - 1.0;
+        first + self.stride * libm::round((u / self.step - first) / self.stride)
+    }
+}
+
+/// `ln(1 + x) - x` for `x = e^2u - 1`: the logarithm is `2u` itself where nothing cancels.
+fn ln_1p_minus_of_square(u: f64) -> f64 {
+    let x = expm1(2.0 * u);
+    if x > -0.4 && x < 0.5 { ln_1p_minus(x) } else { 2.0 * u - x }
+}
+
+/// The critical value at which the mean of `tail` equals `p`, on the side of `guess`.
+///
+/// Solved in `ln |c|` for `ln(tail / p)`, which is nearly a straight line far out.
+pub(super) fn solve<F: Fn(f64) -> Result<f64>>(
+    what: &'static str,
+    tail: Tail<F>,
+    df: f64,
+    p: f64,
+    guess: f64,
+) -> Result<f64> {
+    // The logarithms of the normal doubles.
+    const LIMITS: (f64, f64) = (-708.0, 709.0);
+    let sign = guess.signum();
+    let start = log(guess.abs()).clamp(LIMITS.0, LIMITS.1);
+    let mut mixture = ScaleMixture::new(tail, df, sign * exp(start), 0.0);
+    let mut step = 0.125;
+    let mut start = start;
+    let rounds = if df >= FINE_GRID_FROM { 2 } else { 1 };
+    for round in 1..=rounds {
+        let mut distance = |x: f64| Ok(log(mixture.at(sign * exp(x))? / p));
+        let bracket = bracket_around(what, start, step, LIMITS, &mut distance)?;
+        let tolerance = Tolerance {
+            absolute: if round == rounds { 1e-15 } else { 1e-5 },
+            relative: 0.0,
+            ..Tolerance::default()
+        };
+        start = refine(what, bracket, tolerance, &mut distance)?.at;
+        step = 2e-5;
+        if round < rounds {
+            mixture = ScaleMixture::new(mixture.tail, df, sign * exp(start), 0.0);
+        }
+    }
+    Ok(sign * exp(start))
+}
+
+/// Degrees of freedom of at least 1/2, infinity meaning a known standard deviation.
+///
+/// Below, the density of `ln s` has so long a lower tail that the sums would grow without bound.
+pub(super) fn checked_df(df: f64) -> Result<f64> {
+    if df >= 0.5 {
+        return Ok(df);
+    }
+    Err(NumericsError::OutOfDomain {
+        name: "degrees of freedom",
+        given: df,
+        allowed: "at least 0.5 (infinity: known standard deviation)",
+    })
+}
+
+/// A probability strictly between 0 and 1.
+pub(super) fn checked_probability(p: f64) -> Result<f64> {
+    if p > 0.0 && p < 1.0 {
+        return Ok(p);
+    }
+    Err(NumericsError::OutOfDomain {
+        name: "probability",
+        given: p,
+        allowed: "above 0 and below 1",
+    })
+}
+
+/// A critical value that is a number.
+pub(super) fn checked_critical(c: f64) -> Result<f64> {
+    if c.is_nan() {
+        return Err(NumericsError::OutOfDomain {
+            name: "critical value",
+            given: c,
+            allowed: "a number",
+        });
+    }
+    Ok(c)
+}

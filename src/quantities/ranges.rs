@@ -1,0 +1,114 @@
+//! The single table of legal ranges, with the name that a message uses and the reason for an odd limit.
+
+use std::fmt;
+
+/// A legal range of a number, ends included or not.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Range {
+    /// What a message calls the number.
+    pub name: &'static str,
+    /// Lower end.
+    pub low: f64,
+    /// Whether the lower end itself is legal.
+    pub low_included: bool,
+    /// Upper end.
+    pub high: f64,
+    /// Whether the upper end itself is legal.
+    pub high_included: bool,
+    /// The range in words, and the way out.
+    pub advice: &'static str,
+}
+
+/// Significance level: above 0.4 a "test" would reject four true hypotheses in ten.
+pub const ALPHA: Range = Range {
+    name: "the significance level",
+    low: 1e-12,
+    low_included: true,
+    high: 0.4,
+    high_included: true,
+    advice: "must lie above 0 and at most at 0.4; 0.05 is usual, written as a fraction, not in percent",
+};
+
+/// Power to aim for: 1 would need infinitely many units.
+pub const POWER: Range = Range {
+    name: "the power",
+    low: 0.0,
+    low_included: false,
+    high: 0.999_999,
+    high_included: true,
+    advice: "must lie above the significance level and below 1 (no finite study has a power of 1); 0.8 or 0.9 is usual",
+};
+
+/// Share of units that will be lost.
+pub const LOSS_FRACTION: Range = Range {
+    name: "the fraction lost",
+    low: 0.0,
+    low_included: true,
+    high: 0.95,
+    high_included: true,
+    advice: "must lie between 0 and 0.95, written as a fraction (0.1 for ten in a hundred)",
+};
+
+/// A standard deviation.
+pub const SPREAD: Range = Range {
+    name: "the standard deviation",
+    low: 1e-100,
+    low_included: true,
+    high: 1e100,
+    high_included: true,
+    advice: "must be a positive number in the unit of the outcome; values that never vary need no study",
+};
+
+/// A difference to detect, by its size.
+pub const DIFFERENCE: Range = Range {
+    name: "the size of the difference",
+    low: 1e-100,
+    low_included: true,
+    high: 1e100,
+    high_included: true,
+    advice: "must not be 0: a study cannot be sized to detect no difference",
+};
+
+/// Weight of a group in the allocation.
+pub const WEIGHT: Range = Range {
+    name: "the allocation weight",
+    low: 0.001,
+    low_included: true,
+    high: 1000.0,
+    high_included: true,
+    advice: "must lie between 0.001 and 1000; 1 for every group means equal groups",
+};
+
+impl Range {
+    /// The value if it is legal.
+    ///
+    /// # Errors
+    ///
+    /// [`OutOfRange`] when the value is not finite or lies outside.
+    pub fn check(&'static self, value: f64) -> Result<f64, OutOfRange> {
+        let above = value > self.low || (self.low_included && value == self.low);
+        let below = value < self.high || (self.high_included && value == self.high);
+        if value.is_finite() && above && below {
+            Ok(value)
+        } else {
+            Err(OutOfRange { range: self, given: value })
+        }
+    }
+}
+
+/// A number outside its range.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct OutOfRange {
+    /// The range that was missed.
+    pub range: &'static Range,
+    /// The number that was given.
+    pub given: f64,
+}
+
+impl fmt::Display for OutOfRange {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{} is {}; it {}", self.range.name, self.given, self.range.advice)
+    }
+}
+
+impl std::error::Error for OutOfRange {}

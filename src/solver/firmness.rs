@@ -1,0 +1,147 @@
+//! How firm the number is: bounds of the spread, a table of sizes, and the data of the figures.
+
+use super::error::SolverError;
+use super::sample_size::{smallest_from, smallest_sizes, within_reach};
+use crate::designs::{Point, Problem, Sizes};
+use crate::plan::{Bound, CeilingPlan, ContourLine, Contours, Curves, Firmness};
+
+/// Level of the confidence limits that serve as plausible bounds of the spread.
+const LIMITS_LEVEL: f64 = 0.8;
+
+/// Bounds of a spread of unknown precision, relative to it (common practice, not a confidence statement).
+const CONVENTIONAL_SPAN: (f64, f64) = (0.8, 1.25);
+
+/// Effects of the table, relative to the planned one.
+const TABLE_EFFECTS: [f64; 5] = [0.7, 0.85, 1.0, 1.15, 1.3];
+
+/// Points of a power curve.
+const CURVE_POINTS: u64 = 48;
+
+/// Spreads at which a contour line is computed.
+const CONTOUR_POINTS: usize = 21;
+
+pub(super) fn firmness(
+    problem: &dyn Problem,
+    sizes: &Sizes,
+    ceiling: Option<&CeilingPlan>,
+) -> Result<Firmness, SolverError> {
+    let planned = problem.planned();
+    let limits = problem.spread().limits(LIMITS_LEVEL)?;
+    let (low, high) = limits.unwrap_or((
+        planned.nuisance * CONVENTIONAL_SPAN.0,
+        planned.nuisance * CONVENTIONAL_SPAN.1,
+    ));
+    let bounds = (low, high);
+    let table_spreads = vec![low, planned.nuisance, high];
+    let table_effects: Vec<_> = TABLE_EFFECTS.iter().map(|f| f * planned.effect).collect();
+    Ok(Firmness {
+        low: bound(problem, sizes, low)?,
+        high: bound(problem, sizes, high)?,
+        limits_level: limits.map(|_| LIMITS_LEVEL),
+        table: table(problem, &table_effects, &table_spreads)?,
+        table_effects,
+        table_spreads,
+        curves: curves(problem, sizes, bounds, ceiling)?,
+        contours: contours(problem, sizes, bounds, ceiling)?,
+    })
+}
+
+fn bound(problem: &dyn Problem, sizes: &Sizes, spread: f64) -> Result<Bound, SolverError> {
+    let at = Point { nuisance: spread, ..problem.planned() };
+    let power = problem.power(sizes, at)?;
+    let sizes = within_reach(smallest_sizes(problem, at))?.map(|found| found.sizes);
+    Ok(Bound { spread, sizes, power })
+}
+
+/// Each cell is searched from the size of its left neighbour, which is near.
+fn table(
+    problem: &dyn Problem,
+    effects: &[f64],
+    spreads: &[f64],
+) -> Result<Vec<Vec<Option<u64>>>, SolverError> {
+    let cell = |effect: f64, nuisance: f64| {
+        let at = Point { effect, nuisance };
+        let Some(textbook) = problem.textbook(at)? else { return Ok(None) };
+        let found = smallest_from(problem, at, Some(textbook.step as u64 + 1));
+        Ok(within_reach(found)?.map(|found| found.sizes.step))
+    };
+    effects
+        .iter()
+        .map(|effect| spreads.iter().map(|spread| cell(*effect, *spread)).collect())
+        .collect()
+}
+
+fn curves(
+    problem: &dyn Problem,
+    sizes: &Sizes,
+    (low, high): (f64, f64),
+    ceiling: Option<&CeilingPlan>,
+) -> Result<Curves, SolverError> {
+    let first = problem.smallest_step();
+    let shown = sizes.step.max(ceiling.map_or(0, |c| c.remain.step)).max(first + 4);
+    let last = shown.saturating_mul(2);
+    let stride = (last - first).div_ceil(CURVE_POINTS).max(1);
+    let mut steps: Vec<u64> =
+        (first..=last).step_by(usize::try_from(stride).unwrap_or(usize::MAX)).collect();
+    steps.push(sizes.step);
+    steps.sort_unstable();
+    steps.dedup();
+    steps.retain(|step| problem.sizes(*step).is_some());
+    let at_spread = |nuisance: f64| {
+        let at = Point { nuisance, ..problem.planned() };
+        steps
+            .iter()
+            .filter_map(|step| problem.sizes(*step))
+            .map(|sizes| Ok(problem.power(&sizes, at)?))
+            .collect::<Result<Vec<_>, SolverError>>()
+    };
+    Ok(Curves {
+        planned: at_spread(problem.planned().nuisance)?,
+        low: at_spread(low)?,
+        high: at_spread(high)?,
+        steps,
+    })
+}
+
+/// Lines of equal size, found from the effect that each size detects: a few root searches a line instead of a size
+/// search for every point of a grid.
+fn contours(
+    problem: &dyn Problem,
+    sizes: &Sizes,
+    (low, high): (f64, f64),
+    ceiling: Option<&CeilingPlan>,
+) -> Result<Contours, SolverError> {
+    let planned = problem.planned().nuisance;
+    let (from, to) = (low.min(planned) * 0.8, high.max(planned) * 1.15);
+    let width = (to - from) / (CONTOUR_POINTS - 1) as f64;
+    let spreads: Vec<_> = (0..CONTOUR_POINTS).map(|i| from + width * i as f64).collect();
+    let target = problem.risk().power.get();
+    let mut steps: Vec<(u64, bool)> = ladder(problem.smallest_step(), sizes.step);
+    if let Some(ceiling) = ceiling {
+        let step = ceiling.remain.step;
+        steps.retain(|(other, _)| *other != step);
+        steps.push((step, true));
+    }
+    steps.sort_unstable();
+    let mut lines = Vec::new();
+    for (step, is_ceiling) in steps {
+        let Some(sizes) = problem.sizes(step) else { continue };
+        let effects = spreads
+            .iter()
+            .map(|nuisance| Ok(problem.detectable(&sizes, *nuisance, target)?))
+            .collect::<Result<Vec<_>, SolverError>>()?;
+        lines.push(ContourLine { step, ceiling: is_ceiling, effects });
+    }
+    Ok(Contours { spreads, lines })
+}
+
+/// Sizes around the chosen one, each about 1.5 times the one before.
+fn ladder(smallest: u64, chosen: u64) -> Vec<(u64, bool)> {
+    let mut steps: Vec<u64> = [(4, 9), (2, 3), (1, 1), (3, 2), (9, 4), (27, 8)]
+        .iter()
+        .map(|(top, bottom)| (chosen.saturating_mul(*top) + bottom / 2) / bottom)
+        .filter(|step| *step >= smallest)
+        .collect();
+    steps.dedup();
+    steps.into_iter().map(|step| (step, false)).collect()
+}

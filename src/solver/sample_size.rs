@@ -1,0 +1,87 @@
+//! The smallest sizes that reach a wanted power.
+
+use super::error::SolverError;
+use crate::designs::{Point, Problem, Sizes};
+use crate::numerics::{NumericsError, integer_search};
+use crate::quantities::LARGEST_SIZE;
+
+/// Smallest sizes with their proof.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Found {
+    /// The sizes.
+    pub sizes: Sizes,
+    /// Power there; at least the target.
+    pub power: f64,
+    /// Power with one step fewer, below the target; `None` at the smallest step for which the analysis exists.
+    pub power_one_fewer: Option<f64>,
+}
+
+/// The smallest step whose power reaches the target of the problem, at a point.
+///
+/// The size of every other group follows from the step by rounding up, so "smallest" means: with one unit fewer in
+/// the smallest group, and the others rounded up accordingly, the target is missed.
+///
+/// # Errors
+///
+/// [`SolverError::OutOfReach`] when the largest size does not suffice.
+pub fn smallest_sizes(problem: &dyn Problem, at: Point) -> Result<Found, SolverError> {
+    let textbook = problem.textbook(at)?;
+    let Some(textbook) = textbook else { return Err(SolverError::OutOfReach) };
+    smallest_from(problem, at, Some(textbook.step as u64 + 1))
+}
+
+/// The same, searched from a size that is expected to be near.
+pub(super) fn smallest_from(
+    problem: &dyn Problem,
+    at: Point,
+    hint: Option<u64>,
+) -> Result<Found, SolverError> {
+    let target = problem.risk().power.get();
+    let largest = largest_step(problem);
+    let power = |step: u64| match problem.sizes(step) {
+        Some(sizes) => problem.power(&sizes, at),
+        None => Err(NumericsError::TargetOutOfReach { largest: step, best: f64::NAN }),
+    };
+    let lowest = problem.smallest_step();
+    let found =
+        integer_search::smallest_rising(lowest, largest, hint, target, power).map_err(|error| {
+            match error {
+                NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,
+                other => other.into(),
+            }
+        })?;
+    let sizes = problem.sizes(found.n).ok_or(SolverError::TooMany)?;
+    Ok(Found { sizes, power: found.value, power_one_fewer: found.value_before })
+}
+
+/// The largest step for which no group exceeds the largest size.
+fn largest_step(problem: &dyn Problem) -> u64 {
+    let (mut low, mut high) = (problem.smallest_step(), LARGEST_SIZE + 1);
+    while high - low > 1 {
+        let middle = low + (high - low) / 2;
+        if problem.sizes(middle).is_some() {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    low
+}
+
+/// Sizes of the textbook formula at a point.
+///
+/// # Errors
+///
+/// [`SolverError::OutOfReach`] when the formula exceeds the largest size.
+pub fn textbook_sizes(problem: &dyn Problem, at: Point) -> Result<Sizes, SolverError> {
+    Ok(problem.textbook(at)?.ok_or(SolverError::OutOfReach)?.sizes)
+}
+
+/// Out of reach is an answer where a table or a comparison is filled; other failures stay failures.
+pub(super) fn within_reach<T>(result: Result<T, SolverError>) -> Result<Option<T>, SolverError> {
+    match result {
+        Ok(value) => Ok(Some(value)),
+        Err(SolverError::OutOfReach) => Ok(None),
+        Err(other) => Err(other),
+    }
+}

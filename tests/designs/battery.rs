@@ -1,0 +1,101 @@
+//! What must hold for every design: read from its own example, so a new design inherits it.
+
+use std::path::Path;
+
+use sufficit::designs::{Point, Problem, REGISTRY};
+use sufficit::solver::smallest_sizes;
+
+use crate::support::read;
+
+/// The experiments of all shipped examples that belong to a design and need no data file.
+fn problems() -> Vec<(String, Box<dyn Problem>)> {
+    let folder = Path::new(env!("CARGO_MANIFEST_DIR")).join("examples");
+    let mut found = Vec::new();
+    let mut entries: Vec<_> = std::fs::read_dir(&folder)
+        .expect("the folder exists")
+        .flat_map(|entry| {
+            let path = entry.expect("readable").path();
+            if path.is_dir() { vec![path.join("study.yaml")] } else { vec![path] }
+        })
+        .filter(|path| path.extension().is_some_and(|e| e == "yaml") && path.is_file())
+        .collect();
+    entries.sort();
+    for path in entries {
+        let text = std::fs::read_to_string(&path).expect("readable");
+        let file: serde_yaml::Value = serde_yaml::from_str(&text).expect("sound");
+        for experiment in file["experiments"].as_sequence().expect("a list") {
+            if experiment["spread"].get("file").is_some() {
+                continue;
+            }
+            let structure = experiment["design"]["structure"].as_str().expect("text");
+            let design = REGISTRY.iter().find(|d| d.card().structure == structure).expect("known");
+            let yaml = serde_yaml::to_string(experiment).expect("text");
+            let name =
+                format!("{} in {}", experiment["id"].as_str().unwrap_or("?"), path.display());
+            found.push((name, read(design.card().id, &yaml).expect("an example is valid")));
+        }
+    }
+    found
+}
+
+#[test]
+fn every_design_has_an_example() {
+    let problems = problems();
+    for design in REGISTRY {
+        let id = design.card().id;
+        assert!(problems.iter().any(|(_, p)| p.card().id == id), "{id} has no example");
+    }
+}
+
+#[test]
+fn power_rises_with_size_and_effect_and_falls_with_spread() {
+    for (name, problem) in problems() {
+        let at = problem.planned();
+        let mut last = 0.0;
+        for step in problem.smallest_step()..80 {
+            let sizes = problem.sizes(step).expect("small");
+            let power = problem.power(&sizes, at).expect("it exists");
+            assert!(power >= last, "{name}: power falls at {step}");
+            last = power;
+            let more = Point { effect: at.effect * 1.01, ..at };
+            let wider = Point { nuisance: at.nuisance * 1.01, ..at };
+            assert!(problem.power(&sizes, more).expect("it exists") >= power, "{name}");
+            assert!(problem.power(&sizes, wider).expect("it exists") <= power, "{name}");
+        }
+    }
+}
+
+#[test]
+fn smallest_is_smallest_for_every_small_size() {
+    for (name, problem) in problems() {
+        for tenths in 4..40 {
+            let at = Point {
+                effect: problem.planned().nuisance * f64::from(tenths) / 10.0,
+                ..problem.planned()
+            };
+            let target = problem.risk().power.get();
+            let found = smallest_sizes(problem.as_ref(), at).expect("within reach");
+            let reaches = |step| {
+                problem.power(&problem.sizes(step).expect("small"), at).expect("it exists")
+                    >= target
+            };
+            let first = (problem.smallest_step()..).find(|step| reaches(*step));
+            assert_eq!(first, Some(found.sizes.step), "{name}, effect {}", at.effect);
+        }
+    }
+}
+
+#[test]
+fn the_detectable_effect_has_the_wanted_power() {
+    for (name, problem) in problems() {
+        for step in [problem.smallest_step(), 5, 12, 40, 1000] {
+            let sizes = problem.sizes(step).expect("small");
+            let nuisance = problem.planned().nuisance;
+            for power in [0.5, 0.8, 0.99] {
+                let effect = problem.detectable(&sizes, nuisance, power).expect("it exists");
+                let back = problem.power(&sizes, Point { effect, nuisance }).expect("it exists");
+                assert!((back - power).abs() < 1e-10, "{name}, {step}: {back}");
+            }
+        }
+    }
+}

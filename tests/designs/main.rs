@@ -1,0 +1,5 @@
+//! The theory of every design against values from outside the project, and a battery that every design inherits.
+
+mod battery;
+mod parallel_means;
+mod support;

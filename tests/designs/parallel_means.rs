@@ -1,0 +1,230 @@
+//! Independent groups, difference between means.
+//!
+//! Tables: `two_sample_t_power.csv`, `two_sample_t_smallest_n.csv` (mpmath, 30 digits) and `all_pairs_any_each.csv`
+//! (mpmath noncentral t for the power of a pair); printed values name their source beside them.
+
+use sufficit::designs::{Point, Problem};
+use sufficit::solver::smallest_sizes;
+
+use crate::support::{number, read, sizes, table};
+
+fn two_groups(difference: f64, sd: f64, alpha: f64, sides: &str, power: f64) -> Box<dyn Problem> {
+    let yaml = format!(
+        "design: {{structure: parallel-groups, groups: [a, b]}}\n\
+         effect: {{difference: {difference}}}\nspread: {sd}\n\
+         risk: {{alpha: {alpha}, sides: {sides}, power: {power}}}"
+    );
+    read("parallel-means", &yaml).unwrap_or_else(|faults| panic!("{yaml}\n{faults:?}"))
+}
+
+fn words(sides: &str) -> &'static str {
+    if sides == "1" { "one" } else { "two" }
+}
+
+#[test]
+fn power_agrees_with_thirty_digits() {
+    for row in table("two_sample_t_power.csv") {
+        let [delta, sd, alpha] = ["delta", "sd", "alpha"].map(|key| number(&row, key));
+        let per_group = [number(&row, "n1") as u64, number(&row, "n2") as u64];
+        // Rows without a difference, or with one in the other direction, are legal questions to the power function.
+        let problem = two_groups(1.0, sd, alpha, words(&row["sides"]), 0.999_99);
+        let power = problem
+            .power(&sizes(&per_group), Point { effect: delta, nuisance: sd })
+            .expect("the power exists");
+        let expected = number(&row, "power");
+        assert!((power - expected).abs() < 1e-12, "{row:?}: {power}");
+    }
+}
+
+#[test]
+fn smallest_size_agrees_with_the_table_and_one_fewer_misses() {
+    for row in table("two_sample_t_smallest_n.csv") {
+        let [effect, alpha, target] = ["effect", "alpha", "power_target"].map(|k| number(&row, k));
+        let problem = two_groups(effect, 1.0, alpha, words(&row["sides"]), target);
+        let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+        assert_eq!(found.sizes.step, number(&row, "n_per_group") as u64, "{row:?}");
+        assert!(
+            (found.power - number(&row, "power_at_n")).abs() < 1e-11,
+            "{row:?} {}",
+            found.power
+        );
+        match found.power_one_fewer {
+            None => assert!(row["power_at_n_minus_1"].is_empty(), "{row:?}"),
+            Some(fewer) => {
+                assert!(fewer < target);
+                assert!((fewer - number(&row, "power_at_n_minus_1")).abs() < 1e-11, "{row:?}");
+            }
+        }
+    }
+}
+
+#[test]
+fn each_pair_of_several_groups_agrees() {
+    let mut compared = 0;
+    for row in table("all_pairs_any_each.csv") {
+        let method = row["method"].as_str();
+        if !matches!(method, "bonferroni" | "sidak") {
+            continue;
+        }
+        let list = |key: &str| -> Vec<f64> {
+            row[key].split(';').map(|x| x.parse().expect("a number")).collect()
+        };
+        let means = list("means");
+        let (i, j) = (number(&row, "group_i") as usize - 1, number(&row, "group_j") as usize - 1);
+        let difference = (means[j] - means[i]).abs();
+        if difference == 0.0 {
+            continue;
+        }
+        let names: Vec<_> = (0..means.len()).map(|g| format!("g{g}")).collect();
+        let compare = match row["family"].as_str() {
+            "all_pairs" => "compare: all-pairs",
+            _ => "compare: against-control, control: g0",
+        };
+        let multiplicity =
+            if means.len() > 2 { format!(", multiplicity: {method}") } else { String::new() };
+        let yaml = format!(
+            "design: {{structure: parallel-groups, groups: [{}], {compare}}}\n\
+             effect: {{difference: {difference}}}\nspread: {}\n\
+             risk: {{alpha: {}, power: 0.9999{multiplicity}}}",
+            names.join(", "),
+            row["sd"],
+            row["alpha"],
+        );
+        let problem = read("parallel-means", &yaml).expect("the spec is sound");
+        let per_group: Vec<u64> = list("n_per_group").iter().map(|n| *n as u64).collect();
+        let facts = problem.facts(&sizes(&per_group)).expect("the facts exist");
+        let critical = facts["critical"].as_f64().expect("a number");
+        assert!((critical - number(&row, "critical_t")).abs() < 1e-10, "{row:?}: {critical}");
+        let pair = facts["comparisons"]
+            .as_array()
+            .and_then(|all| all.iter().find(|c| c["first"] == i && c["second"] == j))
+            .unwrap_or_else(|| panic!("the pair is compared: {row:?}"));
+        let power = pair["power"].as_f64().expect("a number");
+        assert!((power - number(&row, "power_pair")).abs() < 1e-10, "{row:?}: {power}");
+        compared += 1;
+    }
+    assert!(compared > 30, "only {compared} rows were compared");
+}
+
+/// Cohen (1988), tables 2.3.5 and 2.4.1, and Cohen (1992), table 2, from memory: n per group to the nearest integer.
+/// The smallest n that reaches the target may be one more than the printed, nearest, integer.
+#[test]
+fn cohens_tables_hold() {
+    let printed = [
+        (0.2, 0.05, 0.8, 393),
+        (0.5, 0.05, 0.8, 64),
+        (0.8, 0.05, 0.8, 26),
+        (0.2, 0.05, 0.9, 526),
+        (0.5, 0.05, 0.9, 85),
+        (0.8, 0.05, 0.9, 34),
+        (0.2, 0.01, 0.8, 586),
+        (0.8, 0.01, 0.8, 38),
+    ];
+    for (d, alpha, power, n) in printed {
+        let problem = two_groups(d, 1.0, alpha, "two", power);
+        let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+        assert!(
+            found.sizes.step == n || found.sizes.step == n + 1,
+            "d = {d}: {}",
+            found.sizes.step
+        );
+    }
+    for (n, d, power) in [(50, 0.5, 0.70), (20, 0.8, 0.69), (100, 0.2, 0.29)] {
+        let problem = two_groups(d, 1.0, 0.05, "two", 0.8);
+        let exact = problem.power(&sizes(&[n, n]), problem.planned()).expect("the power exists");
+        assert!((exact - power).abs() < 0.005, "n = {n}, d = {d}: {exact}");
+    }
+}
+
+/// Julious (2004), Statistics in Medicine 23, superiority table, from memory: n per group, two-sided 5 %, 90 %.
+#[test]
+fn julious_table_holds() {
+    for (d, n) in [(0.05, 8407), (0.1, 2103), (0.25, 338), (0.75, 39)] {
+        let problem = two_groups(d, 1.0, 0.05, "two", 0.9);
+        let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+        assert_eq!(found.sizes.step, n, "d = {d}");
+    }
+}
+
+/// Button et al. (2013), Nature Reviews Neuroscience 14, table 2: sizes and detectable differences.
+#[test]
+fn button_table_holds() {
+    for (d, power, total) in [(0.49, 0.8, 134), (0.49, 0.95, 220), (0.69, 0.95, 112)] {
+        let problem = two_groups(d, 1.0, 0.05, "two", power);
+        let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+        assert_eq!(found.sizes.total, total, "d = {d}");
+    }
+    for (power, d) in [(0.8, 1.26), (0.95, 1.62)] {
+        let problem = two_groups(d, 1.0, 0.05, "two", power);
+        let detectable = problem.detectable(&sizes(&[11, 11]), 1.0, power).expect("it exists");
+        assert!((detectable - d).abs() < 0.005, "{detectable}");
+    }
+}
+
+/// Common practice: SD 0.39, difference 0.5, two-sided 5 %, 80 % power.
+#[test]
+fn the_worked_example_of_the_trade() {
+    let problem = two_groups(0.5, 0.39, 0.05, "two", 0.8);
+    let at = problem.planned();
+    let textbook = problem.textbook(at).expect("it exists").expect("within reach");
+    assert!((textbook.step - 9.55).abs() < 0.005, "{}", textbook.step);
+    assert!((textbook.step_with_table_quantiles - 9.54).abs() < 0.005);
+    assert_eq!(textbook.sizes.per_group, [10, 10]);
+    let found = smallest_sizes(problem.as_ref(), at).expect("within reach");
+    assert_eq!(found.sizes.per_group, [11, 11]);
+    assert!((found.power - 0.816).abs() < 0.0005, "{}", found.power);
+    assert!((found.power_one_fewer.expect("10 exists") - 0.774).abs() < 0.0005);
+    let six = sizes(&[6, 6]);
+    assert!((problem.textbook_detectable(&six, 0.39).expect("it exists") - 0.63).abs() < 0.005);
+    assert!((problem.textbook_power(&six, at).expect("it exists") - 0.60).abs() < 0.005);
+    assert!((problem.power(&six, at).expect("it exists") - 0.518).abs() < 0.0005);
+}
+
+#[test]
+fn three_groups_in_pairs_take_ten_each_by_the_textbook_never_the_total_of_two_divided() {
+    let yaml = "design: {structure: parallel-groups, groups: [a, b, c]}\neffect: {difference: 0.5}\n\
+                spread: 0.39\nrisk: {multiplicity: each-at-alpha}";
+    let problem = read("parallel-means", yaml).expect("sound");
+    let textbook = problem.textbook(problem.planned()).expect("it exists").expect("within reach");
+    assert_eq!(textbook.sizes.per_group, [10, 10, 10]);
+    let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+    // 27 and 30 degrees of freedom instead of 18 and 20 help a little; scipy.stats.nct gives 0.7892 and 0.8287.
+    assert_eq!(found.sizes.per_group, [11, 11, 11]);
+}
+
+#[test]
+fn unequal_groups_grow_by_the_smallest_and_round_up() {
+    let yaml = "design: {structure: parallel-groups, groups: [a, {name: b, weight: 1.1}]}\n\
+                effect: {difference: 1}\nspread: 1";
+    let problem = read("parallel-means", yaml).expect("sound");
+    assert_eq!(problem.sizes(10).expect("small").per_group, [10, 11]);
+    assert_eq!(problem.sizes(11).expect("small").per_group, [11, 13]);
+    let yaml = "design: {structure: parallel-groups, groups: [{name: a, weight: 3}, {name: b, weight: 2}]}\n\
+                effect: {difference: 1}\nspread: 1";
+    let problem = read("parallel-means", yaml).expect("sound");
+    assert_eq!(problem.sizes(3).expect("small").per_group, [5, 3]);
+}
+
+#[test]
+fn contradictions_are_faults_with_a_place() {
+    let place = |yaml: &str| {
+        let faults = read("parallel-means", yaml).expect_err("the spec is wrong");
+        faults.iter().map(|f| f.at.to_string()).collect::<Vec<_>>()
+    };
+    let base = "design: {groups: [a, b]}\neffect: {difference: 1}\n";
+    assert_eq!(place(&format!("{base}spread: -1")), ["spread"]);
+    assert_eq!(place(&format!("{base}spread: {{values: [2, 2, 2]}}")), ["spread.values"]);
+    assert_eq!(place(&format!("{base}spread: 1\nrisk: {{alpha: 1}}")), ["risk.alpha"]);
+    assert_eq!(place(&format!("{base}spread: 1\nrisk: {{power: 1}}")), ["risk.power"]);
+    assert_eq!(place(&format!("{base}spread: 1\nrisk: {{power: 0.04}}")), ["risk.power"]);
+    assert_eq!(
+        place("design: {groups: [a, a]}\neffect: {difference: 0}\nspread: 0"),
+        ["design.groups[1]", "effect.difference", "spread"]
+    );
+    assert_eq!(
+        place(
+            "design: {groups: [a, b, c]}\neffect: {difference: 1}\nspread: 1\nrisk: {sides: one, multiplicity: sidak}"
+        ),
+        ["risk.multiplicity"]
+    );
+}

@@ -51,7 +51,8 @@ fn main() {
         for _ in 0..ROUNDS {
             let loaded = load();
             let plan = documents::solve(&loaded, &Silent).expect("solvable");
-            sources.push(documents::press(&loaded, &plan).and_then(|p| p.typst()).expect("renders"));
+            sources
+                .push(documents::press(&loaded, &plan).and_then(|p| p.typst()).expect("renders"));
         }
         let typeset = median(|round| {
             let source = &sources[round];
@@ -80,9 +81,15 @@ fn main() {
         println!("{example}: {pages} pages");
         println!("  typesetting alone            {typeset:>12.2?}");
         println!("  YAML to PDF and Markdown     {whole:>12.2?}");
-        println!("  ratio (at most 1.5)          {:>10.2}", whole.as_secs_f64() / typeset.as_secs_f64());
+        println!(
+            "  ratio (at most 1.5)          {:>10.2}",
+            whole.as_secs_f64() / typeset.as_secs_f64()
+        );
         println!("  solving alone                {solved:>12.2?}");
-        println!("  100 000 simulated studies add {:>11.2?} (at most 150 ms)", simulated.saturating_sub(solved));
+        println!(
+            "  100 000 simulated studies add {:>11.2?} (at most 150 ms)",
+            simulated.saturating_sub(solved)
+        );
     }
     println!("peak memory of this process: {} MB (at most 200)", peak_memory());
 }

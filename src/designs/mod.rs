@@ -13,8 +13,8 @@ mod problem;
 
 pub use fault::{Aspect, Fault, Path, Step, Tables};
 pub use problem::{
-    Effect, EffectBasis, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
-    Trial,
+    AtSizes, Effect, EffectBasis, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes,
+    Textbook, Trial,
 };
 
 use schemars::{Schema, SchemaGenerator};

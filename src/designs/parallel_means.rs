@@ -26,7 +26,8 @@ use super::inputs::{
     StatedRisk, read_difference, read_parallel, read_risk, read_spread,
 };
 use super::problem::{
-    Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook, Trial,
+    AtSizes, Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
+    Trial,
 };
 use super::{Card, Fault, Path, StudyDesign, Tables};
 use crate::numerics::{
@@ -205,12 +206,12 @@ impl Means {
         self.parallel.pairs.iter().map(of_pair).fold(0.0, f64::max)
     }
 
-    fn power_at(&self, df: f64, critical: f64, noncentrality: f64) -> numerics::Result<f64> {
-        let t = NoncentralT::new(df, noncentrality)?;
-        let upper = t.sf(critical)?;
-        Ok(match self.risk.risk.sides {
-            Sides::One => upper,
-            Sides::Two => upper + t.cdf(-critical)?,
+    fn fixed(&self, sizes: &Sizes) -> numerics::Result<MeansAtSizes> {
+        Ok(MeansAtSizes {
+            df: self.degrees_of_freedom(sizes),
+            critical: self.critical(sizes)?,
+            factor: self.weakest_factor(sizes),
+            sides: self.risk.risk.sides,
         })
     }
 
@@ -238,6 +239,46 @@ impl Means {
         let mut other = self.clone();
         change(&mut other);
         Box::new(other)
+    }
+}
+
+/// The t tests at fixed sizes.
+#[derive(Debug, Clone, Copy)]
+struct MeansAtSizes {
+    df: f64,
+    critical: f64,
+    factor: f64,
+    sides: Sides,
+}
+
+impl MeansAtSizes {
+    fn power_at(&self, noncentrality: f64) -> numerics::Result<f64> {
+        let t = NoncentralT::new(self.df, noncentrality)?;
+        let upper = t.sf(self.critical)?;
+        Ok(match self.sides {
+            Sides::One => upper,
+            Sides::Two => upper + t.cdf(-self.critical)?,
+        })
+    }
+
+    fn noncentrality_for(&self, power: f64) -> numerics::Result<f64> {
+        let gap = |noncentrality: f64| Ok(self.power_at(noncentrality)? - power);
+        let what = "detectable difference";
+        let start = self.critical + normal_upper_quantile(1.0 - power)?.max(0.0);
+        let bracket = roots::bracket_around(what, start, 0.5, (0.0, 1e12), gap)?;
+        Ok(roots::refine(what, bracket, roots::Tolerance::default(), gap)?.at)
+    }
+}
+
+impl AtSizes for MeansAtSizes {
+    fn power(&self, at: Point) -> numerics::Result<f64> {
+        self.power_at(at.effect / (at.nuisance * self.factor))
+    }
+
+    /// The power depends on the ratio of effect to spread alone, so one root serves every spread.
+    fn detectable(&self, nuisances: &[f64], power: f64) -> numerics::Result<Vec<f64>> {
+        let noncentrality = self.noncentrality_for(power)?;
+        Ok(nuisances.iter().map(|nuisance| noncentrality * nuisance * self.factor).collect())
     }
 }
 
@@ -270,20 +311,8 @@ impl Problem for Means {
         self.parallel.sizes(step)
     }
 
-    fn power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64> {
-        let noncentrality = at.effect / (at.nuisance * self.weakest_factor(sizes));
-        self.power_at(self.degrees_of_freedom(sizes), self.critical(sizes)?, noncentrality)
-    }
-
-    fn detectable(&self, sizes: &Sizes, nuisance: f64, power: f64) -> numerics::Result<f64> {
-        let df = self.degrees_of_freedom(sizes);
-        let critical = self.critical(sizes)?;
-        let gap = |noncentrality: f64| Ok(self.power_at(df, critical, noncentrality)? - power);
-        let what = "detectable difference";
-        let start = critical + normal_upper_quantile(1.0 - power)?.max(0.0);
-        let bracket = roots::bracket_around(what, start, 0.5, (0.0, 1e12), gap)?;
-        let root = roots::refine(what, bracket, roots::Tolerance::default(), gap)?;
-        Ok(root.at * nuisance * self.weakest_factor(sizes))
+    fn at_sizes(&self, sizes: &Sizes) -> numerics::Result<Box<dyn AtSizes>> {
+        Ok(Box::new(self.fixed(sizes)?))
     }
 
     fn textbook(&self, at: Point) -> numerics::Result<Option<Textbook>> {
@@ -404,8 +433,7 @@ impl Problem for Means {
     }
 
     fn facts(&self, sizes: &Sizes) -> numerics::Result<Facts> {
-        let df = self.degrees_of_freedom(sizes);
-        let critical = self.critical(sizes)?;
+        let fixed = self.fixed(sizes)?;
         let at = self.planned();
         let mut comparisons = Vec::new();
         for &(i, j) in &self.parallel.pairs {
@@ -415,7 +443,7 @@ impl Problem for Means {
                 "first": i,
                 "second": j,
                 "noncentrality": noncentrality,
-                "power": self.power_at(df, critical, noncentrality)?,
+                "power": fixed.power_at(noncentrality)?,
             }));
         }
         let weakest = self.weakest_pair(sizes);
@@ -427,8 +455,8 @@ impl Problem for Means {
             "risk": self.risk,
             "alpha_each": self.alpha_each(),
             "rising": self.effect.planned.value > 0.0,
-            "degrees_of_freedom": df,
-            "critical": critical,
+            "degrees_of_freedom": fixed.df,
+            "critical": fixed.critical,
             "standardised": at.effect / at.nuisance,
             "weakest": weakest,
             "noncentrality": at.effect / (at.nuisance * self.weakest_factor(sizes)),

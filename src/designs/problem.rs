@@ -144,6 +144,24 @@ pub trait Trial: Send + Sync {
     );
 }
 
+/// A design at fixed sizes: what depends on the sizes alone (degrees of freedom, critical value) is computed once, so
+/// that grids and curves over the assumptions reuse it.
+pub trait AtSizes: Send + Sync {
+    /// Exact power of the weakest comparison.
+    ///
+    /// # Errors
+    ///
+    /// A numerical failure, none for legal values inside the documented range.
+    fn power(&self, at: Point) -> numerics::Result<f64>;
+
+    /// The effect at which the exact power equals `power`, for each nuisance value.
+    ///
+    /// # Errors
+    ///
+    /// A numerical failure.
+    fn detectable(&self, nuisances: &[f64], power: f64) -> numerics::Result<Vec<f64>>;
+}
+
 /// A design with its numbers in place.
 ///
 /// Effects are handled by size: [`Point::effect`] is positive, its direction only words.
@@ -175,19 +193,31 @@ pub trait Problem: Debug + Send + Sync {
     /// `ceil(step * weight)`, exact. `None` when a size would exceed [`crate::quantities::LARGEST_SIZE`].
     fn sizes(&self, step: u64) -> Option<Sizes>;
 
+    /// The analysis at fixed sizes.
+    ///
+    /// # Errors
+    ///
+    /// A numerical failure, none for sizes of at least [`Self::smallest_step`].
+    fn at_sizes(&self, sizes: &Sizes) -> numerics::Result<Box<dyn AtSizes>>;
+
     /// Exact power of the weakest comparison.
     ///
     /// # Errors
     ///
-    /// A numerical failure, none for legal values inside the documented range.
-    fn power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64>;
+    /// As [`Self::at_sizes`] and [`AtSizes::power`].
+    fn power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64> {
+        self.at_sizes(sizes)?.power(at)
+    }
 
     /// The effect at which the exact power of the weakest comparison equals `power`.
     ///
     /// # Errors
     ///
-    /// A numerical failure.
-    fn detectable(&self, sizes: &Sizes, nuisance: f64, power: f64) -> numerics::Result<f64>;
+    /// As [`Self::at_sizes`] and [`AtSizes::detectable`].
+    fn detectable(&self, sizes: &Sizes, nuisance: f64, power: f64) -> numerics::Result<f64> {
+        let found = self.at_sizes(sizes)?.detectable(&[nuisance], power)?;
+        Ok(found.first().copied().unwrap_or(f64::NAN))
+    }
 
     /// The textbook formula at a point; `None` when its result exceeds the largest size.
     ///

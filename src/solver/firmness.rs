@@ -1,7 +1,8 @@
 //! How firm the number is: bounds of the spread, a table of sizes, and the data of the figures.
 
 use super::error::SolverError;
-use super::sample_size::{smallest_from, smallest_sizes, within_reach};
+use super::grid::size_grid;
+use super::sample_size::{smallest_sizes, within_reach};
 use crate::designs::{Point, Problem, Sizes};
 use crate::plan::{Bound, CeilingPlan, ContourLine, Contours, Curves, Firmness};
 
@@ -38,7 +39,7 @@ pub(super) fn firmness(
         low: bound(problem, sizes, low)?,
         high: bound(problem, sizes, high)?,
         limits_level: limits.map(|_| LIMITS_LEVEL),
-        table: table(problem, &table_effects, &table_spreads)?,
+        table: size_grid(problem, &table_effects, &table_spreads)?,
         table_effects,
         table_spreads,
         curves: curves(problem, sizes, bounds, ceiling)?,
@@ -51,24 +52,6 @@ fn bound(problem: &dyn Problem, sizes: &Sizes, spread: f64) -> Result<Bound, Sol
     let power = problem.power(sizes, at)?;
     let sizes = within_reach(smallest_sizes(problem, at))?.map(|found| found.sizes);
     Ok(Bound { spread, sizes, power })
-}
-
-/// Each cell is searched from the size of its left neighbour, which is near.
-fn table(
-    problem: &dyn Problem,
-    effects: &[f64],
-    spreads: &[f64],
-) -> Result<Vec<Vec<Option<u64>>>, SolverError> {
-    let cell = |effect: f64, nuisance: f64| {
-        let at = Point { effect, nuisance };
-        let Some(textbook) = problem.textbook(at)? else { return Ok(None) };
-        let found = smallest_from(problem, at, Some(textbook.step as u64 + 1));
-        Ok(within_reach(found)?.map(|found| found.sizes.step))
-    };
-    effects
-        .iter()
-        .map(|effect| spreads.iter().map(|spread| cell(*effect, *spread)).collect())
-        .collect()
 }
 
 fn curves(
@@ -87,20 +70,16 @@ fn curves(
     steps.sort_unstable();
     steps.dedup();
     steps.retain(|step| problem.sizes(*step).is_some());
-    let at_spread = |nuisance: f64| {
-        let at = Point { nuisance, ..problem.planned() };
-        steps
-            .iter()
-            .filter_map(|step| problem.sizes(*step))
-            .map(|sizes| Ok(problem.power(&sizes, at)?))
-            .collect::<Result<Vec<_>, SolverError>>()
-    };
-    Ok(Curves {
-        planned: at_spread(problem.planned().nuisance)?,
-        low: at_spread(low)?,
-        high: at_spread(high)?,
-        steps,
-    })
+    let spreads = [problem.planned().nuisance, low, high];
+    let mut powers: [Vec<f64>; 3] = Default::default();
+    for sizes in steps.iter().filter_map(|step| problem.sizes(*step)) {
+        let fixed = problem.at_sizes(&sizes)?;
+        for (nuisance, powers) in spreads.iter().zip(&mut powers) {
+            powers.push(fixed.power(Point { nuisance: *nuisance, ..problem.planned() })?);
+        }
+    }
+    let [planned, low, high] = powers;
+    Ok(Curves { steps, planned, low, high })
 }
 
 /// Lines of equal size, found from the effect that each size detects: a few root searches a line instead of a size
@@ -126,10 +105,7 @@ fn contours(
     let mut lines = Vec::new();
     for (step, is_ceiling) in steps {
         let Some(sizes) = problem.sizes(step) else { continue };
-        let effects = spreads
-            .iter()
-            .map(|nuisance| Ok(problem.detectable(&sizes, *nuisance, target)?))
-            .collect::<Result<Vec<_>, SolverError>>()?;
+        let effects = problem.at_sizes(&sizes)?.detectable(&spreads, target)?;
         lines.push(ContourLine { step, ceiling: is_ceiling, effects });
     }
     Ok(Contours { spreads, lines })

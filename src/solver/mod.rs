@@ -4,12 +4,14 @@
 
 mod error;
 mod firmness;
+mod grid;
 mod monte_carlo;
 mod sample_size;
 mod smaller;
 mod totals;
 
 pub use error::SolverError;
+pub use grid::size_grid;
 pub use monte_carlo::{Progress, Silent, seed_from};
 pub use sample_size::{smallest_sizes, textbook_sizes};
 

@@ -25,17 +25,8 @@ pub struct Found {
 ///
 /// [`SolverError::OutOfReach`] when the largest size does not suffice.
 pub fn smallest_sizes(problem: &dyn Problem, at: Point) -> Result<Found, SolverError> {
-    let textbook = problem.textbook(at)?;
-    let Some(textbook) = textbook else { return Err(SolverError::OutOfReach) };
-    smallest_from(problem, at, Some(textbook.step as u64 + 1))
-}
-
-/// The same, searched from a size that is expected to be near.
-pub(super) fn smallest_from(
-    problem: &dyn Problem,
-    at: Point,
-    hint: Option<u64>,
-) -> Result<Found, SolverError> {
+    let Some(textbook) = problem.textbook(at)? else { return Err(SolverError::OutOfReach) };
+    let hint = Some(textbook.step as u64 + 1);
     let target = problem.risk().power.get();
     let largest = largest_step(problem);
     let power = |step: u64| match problem.sizes(step) {
@@ -55,7 +46,7 @@ pub(super) fn smallest_from(
 }
 
 /// The largest step for which no group exceeds the largest size.
-fn largest_step(problem: &dyn Problem) -> u64 {
+pub(super) fn largest_step(problem: &dyn Problem) -> u64 {
     let (mut low, mut high) = (problem.smallest_step(), LARGEST_SIZE + 1);
     while high - low > 1 {
         let middle = low + (high - low) / 2;

@@ -52,7 +52,9 @@ pub(super) fn study(root: &Node, choices: &[Option<Choice>], files: &SourceFiles
         let value = root.at(&at).unwrap_or(&Node::Null).to_value();
         let choice = choices.get(index).copied().flatten();
         match experiment::read(keys, &value, choice, files) {
-            Ok(experiment) => experiments.extend(experiment),
+            Ok(Some(experiment)) => experiments.push(experiment),
+            // Whatever hides the design was found before, and then this is only its consequence.
+            Ok(None) => findings.push(Fault::key(at, "the design is not known").into()),
             Err(found) => findings.extend(found.into_iter().map(|finding| finding.below(&at))),
         }
     }

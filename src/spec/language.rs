@@ -42,7 +42,7 @@ impl Language {
     }
 }
 
-/// Longest text that a key may hold, in characters; `None` for keys that are checked against a list.
+/// Longest text that a key may hold, in characters.
 pub(super) fn longest(key: &str) -> usize {
     match key {
         "title" => 300,

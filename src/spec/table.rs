@@ -67,16 +67,21 @@ struct Condition<'f> {
 
 impl Condition<'_> {
     fn holds(&mut self, cell: &str) -> bool {
-        let cell = collapse(cell);
-        let same_number = || match (cell.parse::<f64>(), self.value.parse::<f64>()) {
-            (Ok(one), Ok(other)) => one == other,
-            _ => false,
-        };
-        let holds = cell == self.value || same_number();
-        if self.seen.len() <= MOST_LISTED && !self.seen.contains(&cell) {
-            self.seen.push(cell);
+        // Most cells repeat a text that was seen before, without white space to collapse.
+        if self.seen.len() <= MOST_LISTED && !self.seen.iter().any(|seen| seen == cell) {
+            let text = collapse(cell);
+            if !self.seen.contains(&text) {
+                self.seen.push(text);
+            }
         }
-        holds
+        cell == self.value || collapse(cell) == self.value || same_number(cell, self.value)
+    }
+}
+
+fn same_number(one: &str, other: &str) -> bool {
+    match (one.parse::<f64>(), other.parse::<f64>()) {
+        (Ok(one), Ok(other)) => one == other,
+        _ => false,
     }
 }
 

@@ -3,7 +3,7 @@
 use std::path::Path;
 
 use sufficit::designs::{Point, Problem, REGISTRY};
-use sufficit::solver::smallest_sizes;
+use sufficit::solver::{size_grid, smallest_sizes};
 
 use crate::support::read;
 
@@ -95,6 +95,23 @@ fn the_detectable_effect_has_the_wanted_power() {
                 let effect = problem.detectable(&sizes, nuisance, power).expect("it exists");
                 let back = problem.power(&sizes, Point { effect, nuisance }).expect("it exists");
                 assert!((back - power).abs() < 1e-10, "{name}, {step}: {back}");
+            }
+        }
+    }
+}
+
+#[test]
+fn a_grid_gives_what_single_searches_give() {
+    for (name, problem) in problems() {
+        let planned = problem.planned();
+        let effects: Vec<_> = (3..14).map(|i| planned.effect * f64::from(i) / 7.0).collect();
+        let spreads: Vec<_> = (4..13).map(|i| planned.nuisance * f64::from(i) / 8.0).collect();
+        let grid = size_grid(problem.as_ref(), &effects, &spreads).expect("solvable");
+        for (row, effect) in grid.iter().zip(&effects) {
+            for (cell, nuisance) in row.iter().zip(&spreads) {
+                let at = Point { effect: *effect, nuisance: *nuisance };
+                let found = smallest_sizes(problem.as_ref(), at).expect("within reach");
+                assert_eq!(*cell, Some(found.sizes.step), "{name}");
             }
         }
     }

@@ -62,18 +62,14 @@ fn the_batteries_catch_wrong_units() {
     let sf = |x: f64| Ok(1.0 / (1.0 + x.exp()));
     let quantile = |p: f64| Ok((p / (1.0 - p)).ln());
     let upper_quantile = |p: f64| Ok(((1.0 - p) / p).ln());
-    let right = Unit {
-        cdf: &cdf,
-        sf: &sf,
-        quantile: &quantile,
-        upper_quantile: &upper_quantile,
-    };
+    let right = Unit { cdf: &cdf, sf: &sf, quantile: &quantile, upper_quantile: &upper_quantile };
     let points: Vec<f64> = (-20..=20).map(|i| 1.5 * f64::from(i)).collect();
     let probabilities = [1e-12, 1e-6, 0.05, 0.5, 0.95];
     assert_eq!(check_tails(&right, &points), Ok(()));
     assert_eq!(check_round_trips(&right, &probabilities, 1e-12), Ok(()));
 
-    let off_in_the_middle = |x: f64| Ok(1.0 / (1.0 + (-x).exp()) + if x == 0.0 { 1e-9 } else { 0.0 });
+    let off_in_the_middle =
+        |x: f64| Ok(1.0 / (1.0 + (-x).exp()) + if x == 0.0 { 1e-9 } else { 0.0 });
     let falling = |x: f64| Ok(1.0 / (1.0 + x.exp()));
     let not_a_number = |_: f64| Ok(f64::NAN);
     for wrong in [&off_in_the_middle as &dyn Fn(f64) -> Result<f64>, &falling, &not_a_number] {
@@ -81,9 +77,6 @@ fn the_batteries_catch_wrong_units() {
         assert!(check_tails(&unit, &points).is_err());
     }
     let shifted = |p: f64| Ok(((1.0 - p) / p).ln() + 1e-10);
-    let unit = Unit {
-        upper_quantile: &shifted,
-        ..right
-    };
+    let unit = Unit { upper_quantile: &shifted, ..right };
     assert!(check_round_trips(&unit, &probabilities, 1e-12).is_err());
 }

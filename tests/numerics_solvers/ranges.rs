@@ -54,8 +54,13 @@ fn rare_shapes_match_sums_in_many_digits() {
 fn critical_values_match_published_tables() {
     // Pearson, Hartley (1966), Biometrika Tables for Statisticians I, table 29, upper 5 % and 1 %; from memory.
     let published = [
-        (3, 10.0, 0.05, 3.88), (4, 20.0, 0.05, 3.96), (5, 12.0, 0.05, 4.51), (10, 60.0, 0.05, 4.65),
-        (3, 10.0, 0.01, 5.27), (6, 30.0, 0.01, 5.24), (4, f64::INFINITY, 0.05, 3.63),
+        (3, 10.0, 0.05, 3.88),
+        (4, 20.0, 0.05, 3.96),
+        (5, 12.0, 0.05, 4.51),
+        (10, 60.0, 0.05, 4.65),
+        (3, 10.0, 0.01, 5.27),
+        (6, 30.0, 0.01, 5.24),
+        (4, f64::INFINITY, 0.05, 3.63),
     ];
     for (k, df, alpha, q) in published {
         let critical = range(k, df).upper_quantile(alpha).expect("a quantile");
@@ -78,7 +83,9 @@ fn two_means_are_a_t_test() {
 #[test]
 fn the_battery_holds_over_the_domain() {
     let points = [1e-300, 1e-12, 0.01, 0.3, 1.0, 2.0, 3.5, 6.0, 12.0, 50.0, 1e4, 1e300];
-    for (k, df) in [(2, 0.5), (3, 1.0), (3, 1e12), (7, 4.5), (50, 30.0), (1000, 2.0), (10_000, f64::INFINITY)] {
+    for (k, df) in
+        [(2, 0.5), (3, 1.0), (3, 1e12), (7, 4.5), (50, 30.0), (1000, 2.0), (10_000, f64::INFINITY)]
+    {
         let unit = range(k, df);
         let unit = Unit {
             cdf: &|x| unit.cdf(x),
@@ -99,7 +106,9 @@ fn impossible_arguments_are_typed_errors() {
         assert!(matches!(refused, Err(NumericsError::OutOfDomain { .. })), "{k} {df}");
     }
     let unit = range(3, 5.0);
-    assert!(unit.cdf(f64::NAN).is_err() && unit.quantile(0.0).is_err() && unit.quantile(1.0).is_err());
+    assert!(
+        unit.cdf(f64::NAN).is_err() && unit.quantile(0.0).is_err() && unit.quantile(1.0).is_err()
+    );
     assert_eq!((unit.cdf(-1.0), unit.sf(-1.0)), (Ok(0.0), Ok(1.0)));
     assert_eq!((unit.cdf(f64::INFINITY), unit.sf(f64::INFINITY)), (Ok(1.0), Ok(0.0)));
 }

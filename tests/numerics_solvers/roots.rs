@@ -19,7 +19,10 @@ fn check_root(
     if at_low * at_high > 0.0 && root.residual != 0.0 {
         return Err(format!("no change of sign between {low} and {high}"));
     }
-    if root.residual != 0.0 && high - low > 4.0 * f64::EPSILON * root.at.abs() && high > low.next_up() {
+    if root.residual != 0.0
+        && high - low > 4.0 * f64::EPSILON * root.at.abs()
+        && high > low.next_up()
+    {
         return Err(format!("bracket {low}..{high} is wide"));
     }
     Ok(())
@@ -69,7 +72,12 @@ fn the_check_of_roots_catches_wrong_ones() {
         sufficit::numerics::roots::Root { at: 0.5, ..right },
         sufficit::numerics::roots::Root { residual: 1e-3, ..right },
         sufficit::numerics::roots::Root { at: 0.5, residual: 0.25, bracket: (0.5, 0.5), ..right },
-        sufficit::numerics::roots::Root { at: 0.2, residual: 0.2 - 0.25, bracket: (0.2, 0.3), ..right },
+        sufficit::numerics::roots::Root {
+            at: 0.2,
+            residual: 0.2 - 0.25,
+            bracket: (0.2, 0.3),
+            ..right
+        },
     ] {
         assert!(check_root(f, &wrong).is_err(), "{wrong:?}");
     }

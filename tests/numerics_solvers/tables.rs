@@ -20,9 +20,9 @@ impl Row {
     pub fn number(&self, name: &str) -> f64 {
         match self.text(name) {
             "inf" => f64::INFINITY,
-            text => text
-                .parse()
-                .unwrap_or_else(|_| panic!("line {}: {name} is {text:?}", self.line)),
+            text => {
+                text.parse().unwrap_or_else(|_| panic!("line {}: {name} is {text:?}", self.line))
+            }
         }
     }
 
@@ -47,9 +47,8 @@ impl Row {
 
 /// All lines of `tests/reference/<name>.csv`; an empty table is an error, since it would prove nothing.
 pub fn read(name: &str) -> Vec<Row> {
-    let path = Path::new(env!("CARGO_MANIFEST_DIR"))
-        .join("tests/reference")
-        .join(format!("{name}.csv"));
+    let path =
+        Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/reference").join(format!("{name}.csv"));
     let text = std::fs::read_to_string(&path).unwrap_or_else(|e| panic!("{}: {e}", path.display()));
     let mut lines = text.lines();
     let header = split(lines.next().expect("a header"));

@@ -117,7 +117,10 @@ fn too_many_files_and_double_names_are_refused() {
         specification(4, "a", 5),
         stream(5, "", b"y"),
     ];
-    assert_eq!(refusal(&file(&objects, "")), "the document was altered: it holds two files named \"a\"");
+    assert_eq!(
+        refusal(&file(&objects, "")),
+        "the document was altered: it holds two files named \"a\""
+    );
 }
 
 #[test]

@@ -16,6 +16,7 @@ from pathlib import Path
 import mpmath as mp
 
 mp.mp.dps = 50
+SMALLEST = mp.mpf(10) ** -290
 TARGET = Path(sys.argv[1] if len(sys.argv) > 1 else Path(__file__).parent)
 
 
@@ -54,13 +55,14 @@ def binomial_rows():
     for n, p, k in cases:
         q, r = mp.mpf(p), 1 - mp.mpf(p)
         pmf = mp.binomial(n, k) * q**k * r ** (n - k)
-        down = tail(pmf, lambda j: mp.mpf(j) / (n - j + 1) * r / q, -1, (k, 0))
-        up = tail(pmf, lambda j: mp.mpf(n - j) / (j + 1) * q / r, 1, (k, n)) - pmf
-        if k < n and pmf > 0:
-            up = tail(pmf * (n - k) / mp.mpf(k + 1) * q / r, lambda j: mp.mpf(n - j) / (j + 1) * q / r, 1, (k + 1, n))
-        if min(pmf, down) < mp.mpf(10) ** -290:
+        if pmf < SMALLEST:
             continue
-        yield n, repr(p), k, text(pmf), text(down), text(up if k < n else mp.mpf(0))
+        down = tail(pmf, lambda j: mp.mpf(j) / (n - j + 1) * r / q, -1, (k, 0))
+        up = mp.mpf(0)
+        if k < n:
+            above = pmf * (n - k) / mp.mpf(k + 1) * q / r
+            up = tail(above, lambda j: mp.mpf(n - j) / (j + 1) * q / r, 1, (k + 1, n))
+        yield n, repr(p), k, text(pmf), text(down), text(up)
 
 
 def poisson_rows():
@@ -70,10 +72,10 @@ def poisson_rows():
         for k in sorted(k for k in ks if k >= 0):
             m = mp.mpf(mean)
             pmf = mp.exp(k * mp.log(m) - m - mp.loggamma(k + 1))
+            if pmf < SMALLEST:
+                continue
             down = tail(pmf, lambda j: j / m, -1, (k, 0))
             up = tail(pmf * m / (k + 1), lambda j: m / (j + 1), 1, (k + 1, None))
-            if min(pmf, down, up) < mp.mpf(10) ** -290:
-                continue
             yield repr(mean), k, text(pmf), text(down), text(up)
 
 
@@ -92,7 +94,7 @@ def hypergeometric_rows():
                 pmf = weights[x - low] / total
                 down = mp.fsum(weights[: x - low + 1]) / total
                 up = mp.fsum(weights[x - low + 1 :]) / total
-                if pmf < mp.mpf(10) ** -290:
+                if pmf < SMALLEST:
                     continue
                 yield n1, n2, m, repr(odds), x, text(pmf), text(down), text(up), text(mean)
 

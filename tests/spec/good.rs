@@ -4,7 +4,7 @@ use super::{SOUND, problems, sound, with};
 use sufficit::quantities::Kind;
 use sufficit::study::{CeilingLimit, Date, FurtherPurpose, Purpose};
 
-const FULL: &str = "\
+pub const FULL: &str = "\
 sufficit: 1
 title: >
   Limb regeneration in axolotls
@@ -50,7 +50,7 @@ experiments:
       missing-data: complete cases
 ";
 
-const REFERENCES: &str = "\
+pub const REFERENCES: &str = "\
 pilot-2030:
   type: report
   title: Pilot on regrowth
@@ -58,7 +58,7 @@ pilot-2030:
   date: 2030
 ";
 
-const PILOT: &str = "\
+pub const PILOT: &str = "\
 batch,group, blastema   area
 1,control,2.9
 1.0,control,3.8

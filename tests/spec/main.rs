@@ -1,5 +1,6 @@
 //! The spec language: what is read, what is refused, and in which words.
 
+mod consequences;
 mod csv_files;
 mod files;
 mod good;

@@ -103,8 +103,12 @@ pub fn read_parallel(keys: &ParallelKeys) -> Result<Parallel, Vec<Fault>> {
     let mut faults = Vec::new();
     let count = keys.groups.len();
     if !(2..=MOST_GROUPS).contains(&count) {
+        let named = match count {
+            1 => "only 1 group is named".to_owned(),
+            _ => format!("{count} groups are named"),
+        };
         faults.push(
-            Fault::key(at.key("groups"), format!("{count} groups are named"))
+            Fault::key(at.key("groups"), named)
                 .help(format!("a comparison needs at least 2 groups, and at most {MOST_GROUPS}")),
         );
     }

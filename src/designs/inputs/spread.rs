@@ -187,35 +187,36 @@ fn read_told(told: &SpreadTold, at: &Path, tables: &dyn Tables) -> Result<Spread
 
 fn read_stated(told: &SpreadTold, at: &Path) -> Result<Spread, Vec<Fault>> {
     strangers(told, at, &["column", "where"], "sd")?;
-    let sd = checked_sd(told.sd.unwrap_or(f64::NAN), &at.key("sd"))?;
-    let df = match (told.df, told.n) {
-        (Some(_), Some(_)) => {
-            return Err(vec![
-                Fault::key(at.key("n"), "both `df` and `n` are given")
-                    .help("keep `n` for one group, or `df` for a value pooled over groups"),
-            ]);
+    match (checked_sd(told.sd.unwrap_or(f64::NAN), &at.key("sd")), stated_df(told, at)) {
+        (Ok(sd), Ok(df)) => {
+            let origin = match df {
+                Some(_) => SpreadOrigin::Estimated { n: told.n },
+                None => SpreadOrigin::Stated,
+            };
+            Ok(Spread { sd, df, origin, grounds: told.grounds.clone() })
         }
+        (sd, df) => Err(sd.err().into_iter().flatten().chain(df.err()).collect()),
+    }
+}
+
+/// The degrees of freedom that a stated standard deviation was estimated with, where the author says so.
+fn stated_df(told: &SpreadTold, at: &Path) -> Result<Option<f64>, Fault> {
+    match (told.df, told.n) {
+        (Some(_), Some(_)) => Err(Fault::key(at.key("n"), "both `df` and `n` are given")
+            .help("keep `n` for one group, or `df` for a value pooled over groups")),
         (Some(df), None) if !(df.is_finite() && (1.0..=1e9).contains(&df)) => {
-            return Err(vec![
-                Fault::value(at.key("df"), format!("the degrees of freedom are {df}"))
-                    .help("they must be at least 1: units minus groups"),
-            ]);
+            Err(Fault::value(at.key("df"), format!("the degrees of freedom are {df}"))
+                .help("they must be at least 1: units minus groups"))
         }
         (None, Some(n)) if !(2..=1_000_000_000).contains(&n) => {
-            return Err(vec![
-                Fault::value(at.key("n"), format!("the standard deviation comes from {n} units"))
-                    .help("it takes at least 2 units to see any spread"),
-            ]);
+            let noun = if n == 1 { "unit" } else { "units" };
+            let reason = format!("the standard deviation comes from {n} {noun}");
+            Err(Fault::value(at.key("n"), reason).help(
+                "it takes at least 2 units to see any spread, and no more than 1000000000 are read",
+            ))
         }
-        (Some(df), None) => Some(df),
-        (None, Some(n)) => Some(n as f64 - 1.0),
-        (None, None) => None,
-    };
-    let origin = match df {
-        Some(_) => SpreadOrigin::Estimated { n: told.n },
-        None => SpreadOrigin::Stated,
-    };
-    Ok(Spread { sd, df, origin, grounds: told.grounds.clone() })
+        (df, n) => Ok(df.or(n.map(|n| n as f64 - 1.0))),
+    }
 }
 
 fn read_column(told: &SpreadTold, at: &Path, tables: &dyn Tables) -> Result<Spread, Vec<Fault>> {

@@ -1,5 +1,7 @@
 //! The noncentral t distribution.
 
+use core::f64::consts::{FRAC_1_SQRT_2, FRAC_2_SQRT_PI};
+
 use super::invert::{POSITIVE_RANGE, Scale, beyond_range, monotone_root};
 use super::noncentral_t_integrals::{central_moment_integral, normal_order, scale_order};
 use super::student_t::StudentT;
@@ -8,7 +10,7 @@ use crate::numerics::error::{NumericsError, Result};
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::{BetaFamily, BetaPoint};
 use crate::numerics::special::normal::{normal_cdf, normal_ln_sf, normal_quantile_guess};
-use crate::numerics::special::poisson_mixture::{Weights, lower_sum, upper_sum};
+use crate::numerics::special::poisson_mixture::{Family, Weights, lower_sum, upper_sum};
 
 /// Distribution of `(Z + ncp) / sqrt(V / df)` with `Z` standard normal and `V` an independent chi-squared with `df` degrees of freedom.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -30,12 +32,28 @@ const SERIES_LIMIT: f64 = 12.0;
 /// Beyond this multiple of the noncentrality, scaled by the degrees of freedom, the upper tail is its leading power.
 const POWER_TAIL: f64 = 1e9;
 
+/// Exponent up to which `y^b` and its reciprocal are ordinary numbers.
+const REPRESENTABLE: f64 = 500.0;
+
+/// Standardised distance below which the lower tail is certainly the one to compute.
+const CLEARLY_BELOW: f64 = -2.2;
+
+/// An upper tail above this leaves too few digits to the lower one.
+const NEARLY_ALL: f64 = 0.98;
+
+/// Terms below this share of the sum are left out.
+const NEGLIGIBLE: f64 = 4e-18;
+
 impl NoncentralT {
     /// The distribution with `df > 0` degrees of freedom and noncentrality `ncp` of either sign.
     pub fn new(df: f64, ncp: f64) -> Result<Self> {
         let df = degrees_of_freedom("df", df)?;
         if df < LEAST_DEGREES_OF_FREEDOM {
-            return Err(NumericsError::OutOfDomain { name: "df", given: df, allowed: "between 0.01 and 1e18" });
+            return Err(NumericsError::OutOfDomain {
+                name: "df",
+                given: df,
+                allowed: "between 0.01 and 1e18",
+            });
         }
         if ncp.is_nan() || ncp.abs() > LARGEST_T_NONCENTRALITY {
             return Err(NumericsError::OutOfDomain {
@@ -138,11 +156,20 @@ impl NoncentralT {
 
     /// Mixture of incomplete beta functions, all terms positive: `t > 0`, `0 < ncp <= SERIES_LIMIT`.
     fn series(&self, t: f64) -> Tails {
+        let ratio = t * (t / self.df);
+        let fall = 0.5 * self.df * libm::log1p(ratio);
+        // The upper tail is the cheaper one; it serves unless the lower one is so small that its digits would be lost.
+        let z = (t - self.ncp) / (1.0 + 0.5 * ratio).sqrt();
+        if fall < REPRESENTABLE && z > CLEARLY_BELOW {
+            let upper = self.upper_series(t, ratio, fall);
+            if upper.value() < NEARLY_ALL {
+                return Tails::Upper(upper);
+            }
+        }
         let w = 0.5 * self.ncp * self.ncp;
-        let b = 0.5 * self.df;
         let odds = 0.5 * t * t;
-        let even = BetaFamily(BetaPoint::new(0.5, b, odds, odds - 0.5));
-        let odd = BetaFamily(BetaPoint::new(1.0, b, odds, odds - 1.0));
+        let even = BetaFamily(BetaPoint::new(0.5, 0.5 * self.df, odds, odds - 0.5));
+        let odd = BetaFamily(BetaPoint::new(1.0, 0.5 * self.df, odds, odds - 1.0));
         let (even_weights, odd_weights) = (Weights { q: 0.0, w }, Weights { q: 0.5, w });
         if odds < 0.5 + w {
             let sum = lower_sum(even, even_weights).plus(lower_sum(odd, odd_weights)).times(0.5);
@@ -151,6 +178,44 @@ impl NoncentralT {
             let sum = upper_sum(even, even_weights).plus(upper_sum(odd, odd_weights));
             Tails::Upper(sum.times(0.5))
         }
+    }
+
+    /// The upper tail from the first term on, both parities side by side, in units of `y^b e^-w`.
+    ///
+    /// With `x = t²/(t² + df)`, `y = 1 - x`, `b = df/2`, `w = ncp²/2` the tail is `½ Σ (p_j U_j + q_j V_j)`, where
+    /// `U_0 = I_y(b, ½)` and `V_0 = I_y(b, 1) = y^b`.
+    fn upper_series(&self, t: f64, ratio: f64, fall: f64) -> Scaled {
+        let (b, w) = (0.5 * self.df, 0.5 * self.ncp * self.ncp);
+        let x = ratio / (1.0 + ratio);
+        let mut even_step = 2.0 * (self.df * x).sqrt() * self.central.peak();
+        let mut odd_step = b * x;
+        let point = BetaPoint::new(0.5, b, 0.5 * t * t, 0.5 * (t - 1.0) * (t + 1.0));
+        let mut even = even_step * BetaFamily(point).upper_ratio(0.0);
+        let mut odd = 1.0;
+        let (mut p, mut q) = (1.0, self.ncp * FRAC_2_SQRT_PI * FRAC_1_SQRT_2);
+        let mut sum = p * even + q * odd;
+        let mut previous = sum;
+        let mut j = 0.0;
+        loop {
+            even += even_step;
+            odd += odd_step;
+            // One division serves the four ratios of a step.
+            let inverse = 1.0 / ((j + 1.0) * (j + 1.5) * (j + 2.0));
+            let by_half = inverse * (j + 1.0) * (j + 2.0);
+            p *= w * (inverse * (j + 1.5) * (j + 2.0));
+            q *= w * by_half;
+            even_step *= x * (j + 0.5 + b) * by_half;
+            odd_step *= x * (j + 1.0 + b) * (inverse * (j + 1.0) * (j + 1.5));
+            let term = p * even + q * odd;
+            sum += term;
+            j += 1.0;
+            // Negated, so that a term that is not a number ends the loop as well.
+            if !(term >= previous || term > NEGLIGIBLE * sum) {
+                break;
+            }
+            previous = term;
+        }
+        Scaled { factor: 0.5 * sum, exponent: -fall - w }
     }
 
     /// One tail as an integral whose integrand is positive everywhere: for any noncentrality, `t > 0`.

@@ -7,7 +7,7 @@ use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::gamma::{gamma_tails, stirling_remainder};
 use crate::numerics::special::logarithms::ln_1p_minus_near_zero;
 use crate::numerics::special::normal::{INV_SQRT_TAU, mills_ratio, normal_sf};
-use crate::numerics::special::trapezoid::trapezoid;
+use crate::numerics::special::trapezoid::{trapezoid, two_sided};
 
 /// The density of `ln s`, with `s = sqrt(V / df)`, around a point: `2 sqrt(k/2π) e^-r(k) exp(k (ln s² - s² + 1))`, `k = df/2`,
 /// where `r` is the Stirling remainder.
@@ -28,7 +28,8 @@ impl LogScale {
     fn exponent(&self, offset: f64, growth: f64) -> f64 {
         // s'^2 - 1 in terms of the growth, so that nothing is rounded on the scale of s itself.
         let deviation = (self.s - 1.0) * (self.s + 1.0) + self.s * self.s * growth * (2.0 + growth);
-        let ln = if deviation.abs() < 0.4 {
+        // Two small numbers cancel near s = 1; with few degrees of freedom the bell is so wide that it does not matter.
+        let ln = if self.k > 300.0 && deviation.abs() < 0.4 {
             ln_1p_minus_near_zero(deviation)
         } else {
             2.0 * (self.ln_s + offset) - deviation
@@ -41,12 +42,55 @@ impl LogScale {
     }
 }
 
-/// Step of the trapezoidal rule in `ln s` for an exponent with the given second derivative.
+/// Second derivative of the exponent in `ln s` below which the left tail of the integrand gets too long for even steps.
+const LONG_TAILED: f64 = 60.0;
+
+/// Integrates over `ln s`: `f` gets the offset from the point of the scale and its growth `e^offset - 1`.
 ///
-/// The transform of `exp(k (2u - e^2u))` is a gamma function of complex argument; the step puts the first alias,
-/// `|Γ(k + iπ/step)| / Γ(k)` with `4k` the second derivative, below 1e-16 for every `k`.
-fn step_for(curvature: f64) -> f64 {
-    core::f64::consts::PI / (21.0 * curvature + 730.0).sqrt()
+/// `curvature` is minus the second derivative of the exponent at the point. For small ones the variable is changed to
+/// `w` with `ln s = w + 1 - e^-w`, in which the left tail `s^df` falls doubly exponentially. The steps keep the first
+/// alias of `exp(k (2u - e^2u))`, `4k` being the second derivative, below 3e-16 for every `k`: in `ln s` it is
+/// `|Γ(k + iπ/step)| / Γ(k)`, in `w` it was measured in 30-digit arithmetic.
+fn over_log_scale(curvature: f64, f: impl Fn(f64, f64) -> Scaled) -> Scaled {
+    let long_tailed = curvature < LONG_TAILED;
+    let alias = if long_tailed { 90.0 * curvature + 900.0 } else { 21.0 * curvature + 730.0 };
+    let step = core::f64::consts::PI / alias.sqrt();
+    if long_tailed {
+        let side = |step: f64| {
+            let mut decay = Growth::new(-step);
+            let f = &f;
+            move |w: f64| {
+                let decay = decay.next();
+                let offset = w - decay;
+                f(offset, libm::expm1(offset)).times(2.0 + decay)
+            }
+        };
+        return two_sided(step, f(0.0, 0.0).times(2.0), side(step), side(-step));
+    }
+    let side = |step: f64| {
+        let mut growth = Growth::new(step);
+        let f = &f;
+        move |offset: f64| f(offset, growth.next())
+    };
+    two_sided(step, f(0.0, 0.0), side(step), side(-step))
+}
+
+/// The sequence `e^(i step) - 1`, each from the one before: the errors stay within a few ulps over a hundred terms.
+struct Growth {
+    now: f64,
+    first: f64,
+}
+
+impl Growth {
+    fn new(step: f64) -> Self {
+        Self { now: 0.0, first: libm::expm1(step) }
+    }
+
+    #[inline]
+    fn next(&mut self) -> f64 {
+        self.now += self.first * (1.0 + self.now);
+        self.now
+    }
 }
 
 /// `∫ P(Z > ±(t s - ncp)) f(s) ds` over `ln s`: the upper tail with the plus sign, the lower one with the minus sign.
@@ -56,10 +100,9 @@ pub(super) fn scale_order(df: f64, ncp: f64, t: f64, upper: bool) -> Scaled {
     let scale = LogScale::around(df, s);
     // Second derivative of the exponent: the chi part, and the normal part as if it were far in its tail.
     let ts = t * s;
-    let step = step_for(2.0 * df * s * s + 2.0 * ts * ts + (-ncp * ts).max(-ts * ts));
+    let curvature = 2.0 * df * s * s + 2.0 * ts * ts + (-ncp * ts).max(-ts * ts);
     let centre = t.mul_add(s, -ncp);
-    let sum = trapezoid(step, |offset| {
-        let growth = libm::expm1(offset);
+    let sum = over_log_scale(curvature, |offset, growth| {
         normal_tail(sign * (centre + ts * growth)).times_exp(scale.exponent(offset, growth))
     });
     sum.times(scale.norm())
@@ -95,7 +138,11 @@ const PEAK_STEPS: u32 = 40;
 fn quadratic_peak(df: f64, x: f64, product: f64, power: f64) -> f64 {
     let sum = df + x * x;
     let root = (product * product + 4.0 * (df + power) * sum).sqrt();
-    if product > 0.0 { (product + root) / (2.0 * sum) } else { 2.0 * (df + power) / (root - product) }
+    if product > 0.0 {
+        (product + root) / (2.0 * sum)
+    } else {
+        2.0 * (df + power) / (root - product)
+    }
 }
 
 /// Normal upper tail in scaled form.
@@ -139,15 +186,11 @@ pub(super) fn central_moment_integral(df: f64, ncp: f64, x: f64, power: f64) -> 
     let s = quadratic_peak(df, x, product, power);
     let scale = LogScale::around(df, s);
     let xs = x * s;
-    let step = step_for(2.0 * (df + x * x) * s * s - product * s);
+    let curvature = 2.0 * (df + x * x) * s * s - product * s;
     let centre = x.mul_add(s, -ncp);
-    let sum = trapezoid(step, |offset| {
-        let growth = libm::expm1(offset);
+    let sum = over_log_scale(curvature, |offset, growth| {
         let g = centre + xs * growth;
-        Scaled {
-            factor: INV_SQRT_TAU,
-            exponent: scale.exponent(offset, growth) - 0.5 * g * g + power * offset,
-        }
+        Scaled { factor: INV_SQRT_TAU, exponent: scale.exponent(offset, growth) - 0.5 * g * g + power * offset }
     });
     sum.times(scale.norm() * if power > 0.0 { s } else { 1.0 })
 }

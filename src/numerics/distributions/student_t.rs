@@ -38,6 +38,11 @@ impl StudentT {
         self.df
     }
 
+    /// Density at 0.
+    pub(crate) fn peak(&self) -> f64 {
+        libm::exp(self.ln_peak)
+    }
+
     /// Both tails at `t >= 0` or, mirrored, below.
     pub(crate) fn tails(&self, t: f64) -> Tails {
         if t < 0.0 {

@@ -165,8 +165,8 @@ impl CommonFactor {
     /// Integral of a function between 0 and 1, given by its logarithm, times the density of the common normal.
     fn over_common_normal(&self, w: f64, log_f: impl Fn(f64) -> f64) -> Result<f64> {
         let loading = self.factors.iter().map(|f| f.loading.abs()).fold(0.0, f64::max);
-        // One statistic alone exceeds a large w with the common normal up to λ (w + δ) away.
-        let distance = w.abs() + self.largest_shift;
+        // One statistic alone exceeds a large w with the common normal up to λ (w - δ) away.
+        let distance = self.factors.iter().map(|f| f.distance(w, self.sides)).fold(0.0, f64::max);
         let reach = REACH + if distance > 4.0 { loading * distance } else { 0.0 };
         let region =
             Region { low: if self.even() { 0.0 } else { -reach }, high: reach, even: self.even() };
@@ -177,6 +177,11 @@ impl CommonFactor {
         }
         let first_step = f64::min(0.75, 1.5 / (1.0 + steepest));
         integrate_exp(WHAT, region, first_step, log_integrand)
+    }
+
+    /// The shifts, without repetition of equal factors.
+    pub(super) fn shifts(&self) -> Vec<f64> {
+        self.factors.iter().map(|factor| factor.shift).collect()
     }
 
     /// Two-sided and without shifts everything is even in the common normal.
@@ -195,10 +200,11 @@ impl CommonFactor {
         region: Region,
         log_integrand: impl Fn(f64) -> f64,
     ) -> Result<f64> {
-        let Support { low, high, peak } = support(region, &log_integrand);
-        if peak == f64::NEG_INFINITY {
+        let support = support(region, &log_integrand);
+        if support.vanishes() {
             return Ok(0.0);
         }
+        let Support { low, high, peak } = support;
         let mut cuts = vec![low, high];
         for factor in &self.factors {
             let width = 8.0 / factor.steepness();
@@ -226,6 +232,15 @@ impl Factor {
     /// How fast the factor changes with the common normal.
     fn steepness(&self) -> f64 {
         self.loading.abs() / self.own
+    }
+
+    /// How far the mean is from the nearest critical value, as far as that matters to a double.
+    fn distance(&self, w: f64, sides: Sides) -> f64 {
+        let nearest = match sides {
+            Sides::One => (w - self.shift).abs(),
+            Sides::Two => (w - self.shift).abs().min((w + self.shift).abs()),
+        };
+        nearest.min(FAR)
     }
 
     /// Logarithm of the probability that one statistic stays inside, given the common normal.

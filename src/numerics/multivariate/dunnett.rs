@@ -3,7 +3,7 @@
 
 use super::common_factor::{CommonFactor, Sides, Statistic};
 use super::scale_mixture::{
-    ScaleMixture, Tail, checked_critical, checked_df, checked_probability, solve,
+    ScaleMixture, Tail, checked_critical, checked_df, checked_probability, shifted_mean, solve,
 };
 use crate::numerics::distributions::Continuous;
 use crate::numerics::distributions::normal::normal_upper_quantile;
@@ -287,8 +287,7 @@ impl ShiftedComparisons {
             });
         }
         let tail = Tail { at_zero: inner(0.0)?, at_infinity: 0.0, inner };
-        let shift = self.statistics.largest_shift;
-        Ok(ScaleMixture::new(tail, self.df, c, shift).at(c)?.min(1.0))
+        shifted_mean(tail, self.df, c, &self.statistics.shifts())
     }
 }
 

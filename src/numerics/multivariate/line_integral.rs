@@ -11,6 +11,9 @@ const SPACING: f64 = 2.0;
 /// Logarithm of the share of the largest value below which the integrand does not count.
 const NEGLIGIBLE: f64 = 42.0;
 
+/// Integrals with a smaller logarithm are below the smallest double.
+const SMALLEST: f64 = -760.0;
+
 /// No search goes farther out: the density of a normal variable has left the range of doubles.
 const FARTHEST: f64 = 80.0;
 
@@ -29,6 +32,13 @@ pub(super) struct Support {
     pub(super) low: f64,
     pub(super) high: f64,
     pub(super) peak: f64,
+}
+
+impl Support {
+    /// Whether the integral is below the smallest double.
+    pub(super) fn vanishes(&self) -> bool {
+        self.peak < SMALLEST
+    }
 }
 
 /// Finds where `exp(log_f)` counts: the region is widened while it does at an end, and narrowed where it does not.
@@ -76,10 +86,11 @@ pub(super) fn integrate_exp(
     first_step: f64,
     log_f: impl Fn(f64) -> f64,
 ) -> Result<f64> {
-    let Support { low, high, peak } = support(region, &log_f);
-    if peak == f64::NEG_INFINITY {
+    let support = support(region, &log_f);
+    if support.vanishes() {
         return Ok(0.0);
     }
+    let Support { low, high, peak } = support;
     let symmetry = if region.even { 2.0 } else { 1.0 };
     let steps = ((high - low) / first_step) as usize + 1;
     let relative = trapezoid(what, low, high, steps, |z| exp(log_f(z) - peak))?;

@@ -9,6 +9,7 @@ mod line_integral;
 mod owen_q;
 mod range_power;
 mod scale_mixture;
+mod spread;
 mod studentized_range;
 
 pub use bivariate_normal::BivariateNormal;

@@ -1,7 +1,7 @@
 //! The studentised range of means that differ: power to find at least one difference among all pairs.
 
 use super::interval::{log_sf, normal_interval};
-use super::scale_mixture::{ScaleMixture, Tail, checked_critical, checked_df};
+use super::scale_mixture::{Tail, checked_critical, checked_df, shifted_mean};
 use crate::numerics::error::{NumericsError, Result};
 use crate::numerics::quadrature::trapezoid;
 use crate::numerics::special::normal::{normal_density, normal_sf};
@@ -90,7 +90,7 @@ impl ShiftedRange {
             });
         }
         let tail = Tail { inner: |w| self.known_spread_sf(w), at_zero: 1.0, at_infinity: 0.0 };
-        Ok(ScaleMixture::new(tail, self.df, q, self.spread()).at(q)?.min(1.0))
+        shifted_mean(tail, self.df, q, &[self.spread()])
     }
 
     /// Distance between the largest and the smallest mean.
@@ -107,7 +107,8 @@ impl ShiftedRange {
         if w > spread + 2.0 * FAR {
             return Ok(0.0);
         }
-        let (low, high) = (-0.5 * w - REACH, REACH);
+        // A range beyond the distance of the means is reached from both ends alike.
+        let (low, high) = (-0.5 * (w - spread).max(0.0) - REACH, REACH);
         let steps = ((high - low) / 0.5) as usize + 1;
         trapezoid("range of normals", low, high, steps, |z| self.smallest_at(z, w))
     }

@@ -3,6 +3,7 @@
 //! If `H(w)` is a probability when the standard deviation is known, then with `s = sqrt(χ²_ν / ν)` estimated it is
 //! `E[H(c s)]`. This file evaluates that mean, and inverts it in `c`.
 
+use super::spread::Spread;
 use crate::numerics::error::{NumericsError, Result};
 use crate::numerics::roots::{Tolerance, bracket_around, refine};
 use crate::numerics::special::gamma::stirling_remainder;
@@ -15,6 +16,28 @@ const NEGLIGIBLE: f64 = 1e-17;
 
 /// From these degrees of freedom on the grid is laid anew around the root, to keep rounding of `ln c` out of it.
 const FINE_GRID_FROM: f64 = 1e4;
+
+/// Largest shift for which the even grid of this file is the cheaper way.
+const LARGEST_SHIFT: f64 = 30.0;
+
+/// Mean of a tail at one positive critical value `c`, where the tail turns at each of the `shifts` and near 0.
+pub(super) fn shifted_mean<F: Fn(f64) -> Result<f64>>(
+    tail: Tail<F>,
+    df: f64,
+    c: f64,
+    shifts: &[f64],
+) -> Result<f64> {
+    let largest = shifts.iter().map(|shift| shift.abs()).fold(0.0, f64::max);
+    let value = if largest <= LARGEST_SHIFT || df == f64::INFINITY {
+        ScaleMixture::new(tail, df, c, largest).at(c)?
+    } else if c == f64::INFINITY {
+        tail.at_infinity
+    } else {
+        let turns: Vec<f64> = shifts.iter().map(|shift| shift.abs() / c).collect();
+        Spread::new(df).mean_up_to(f64::INFINITY, &turns, |s| (tail.inner)(c * s))?
+    };
+    Ok(value.clamp(0.0, 1.0))
+}
 
 /// One tail of a statistic with known standard deviation, as a function of the critical value.
 ///

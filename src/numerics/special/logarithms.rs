@@ -30,9 +30,21 @@ pub(crate) fn ln_1p_minus_near_zero(x: f64) -> f64 {
     let r = x / (2.0 + x);
     let y = r * r;
     // |r| <= 1/4, so that fourteen terms reach 1e-18.
-    let mut sum = 1.0 / 29.0;
-    for divisor in [27.0, 25.0, 23.0, 21.0, 19.0, 17.0, 15.0, 13.0, 11.0, 9.0, 7.0, 5.0, 3.0_f64] {
-        sum = sum * y + 1.0 / divisor;
-    }
-    r * (2.0 * y * sum - x)
+    // Two interleaved polynomials in the square shorten the chain of dependent operations.
+    let square = y * y;
+    let sum = RECIPROCALS.iter().fold((0.0, 0.0), |(even, odd), pair| {
+        (even * square + pair.0, odd * square + pair.1)
+    });
+    r * (2.0 * y * (sum.0 + y * sum.1) - x)
 }
+
+/// `1/(4k + 3)` and `1/(4k + 5)` for `k` from 6 down to 0.
+const RECIPROCALS: [(f64, f64); 7] = [
+    (1.0 / 27.0, 1.0 / 29.0),
+    (1.0 / 23.0, 1.0 / 25.0),
+    (1.0 / 19.0, 1.0 / 21.0),
+    (1.0 / 15.0, 1.0 / 17.0),
+    (1.0 / 11.0, 1.0 / 13.0),
+    (1.0 / 7.0, 1.0 / 9.0),
+    (1.0 / 3.0, 1.0 / 5.0),
+];

@@ -13,22 +13,36 @@ const BOTTOMLESS: f64 = -1e12;
 
 /// `step Σ f(i step)` over all whole `i`, outward from 0 until the terms vanish; `f` is positive with a single peak near 0.
 pub(crate) fn trapezoid(step: f64, f: impl Fn(f64) -> Scaled) -> Scaled {
-    let top = f(0.0);
+    two_sided(step, f(0.0), &f, &f)
+}
+
+/// The same with the two sides given apart: each is called once for every node, in order, with the node's offset, and
+/// may carry over what it needs from one node to the next.
+pub(crate) fn two_sided(
+    step: f64,
+    top: Scaled,
+    right: impl FnMut(f64) -> Scaled,
+    left: impl FnMut(f64) -> Scaled,
+) -> Scaled {
     if top.exponent < BOTTOMLESS {
         return top;
     }
-    let mut sum = top.factor;
-    for direction in [step, -step] {
-        let mut previous = 0.0;
-        for i in 1..TERMS {
-            let here = f(direction * f64::from(i));
-            let term = here.factor * libm::exp(here.exponent - top.exponent);
-            sum += term;
-            if term <= NEGLIGIBLE * sum && term <= previous {
-                break;
-            }
-            previous = term;
+    let sum = one_side(top, top.factor, step, right);
+    Scaled { factor: one_side(top, sum, -step, left) * step, exponent: top.exponent }
+}
+
+/// Adds the terms of one side to the sum, which is in units of the top term's scale.
+fn one_side(top: Scaled, sum: f64, step: f64, mut f: impl FnMut(f64) -> Scaled) -> f64 {
+    let mut sum = sum;
+    let mut previous = 0.0;
+    for i in 1..TERMS {
+        let here = f(step * f64::from(i));
+        let term = here.factor * libm::exp(here.exponent - top.exponent);
+        sum += term;
+        if term <= NEGLIGIBLE * sum && term <= previous {
+            break;
         }
+        previous = term;
     }
-    Scaled { factor: sum * step, exponent: top.exponent }
+    sum
 }

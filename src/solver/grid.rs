@@ -1,0 +1,74 @@
+//! Smallest sizes over a grid of effects and spreads.
+
+use std::collections::BTreeMap;
+
+use super::error::SolverError;
+use super::sample_size::{largest_step, within_reach};
+use crate::designs::{AtSizes, Point, Problem};
+use crate::numerics::{NumericsError, integer_search};
+
+/// The smallest step that reaches the target for each effect (row) and spread (column); `None` where none does.
+///
+/// Each cell is searched from the answer of its neighbour, and what belongs to a size (its critical value) is computed
+/// once for the whole grid. Every answer is proved as a single search proves it: it reaches the target, and one step
+/// fewer does not.
+///
+/// # Errors
+///
+/// A numerical failure.
+pub fn size_grid(
+    problem: &dyn Problem,
+    effects: &[f64],
+    spreads: &[f64],
+) -> Result<Vec<Vec<Option<u64>>>, SolverError> {
+    let mut fixed = Fixed { problem, known: BTreeMap::new() };
+    let largest = largest_step(problem);
+    let mut above: Vec<Option<u64>> = Vec::new();
+    let mut grid = Vec::with_capacity(effects.len());
+    for effect in effects {
+        let mut row: Vec<Option<u64>> = Vec::with_capacity(spreads.len());
+        for (column, nuisance) in spreads.iter().enumerate() {
+            let at = Point { effect: *effect, nuisance: *nuisance };
+            let left = row.last().copied().flatten();
+            let hint = above.get(column).copied().flatten().or(left);
+            let hint = match hint {
+                Some(step) => Some(step),
+                None => problem.textbook(at)?.map(|textbook| textbook.step as u64 + 1),
+            };
+            row.push(within_reach(fixed.smallest(at, hint, largest))?);
+        }
+        above.clone_from(&row);
+        grid.push(row);
+    }
+    Ok(grid)
+}
+
+/// Analyses at fixed sizes, by step.
+struct Fixed<'a> {
+    problem: &'a dyn Problem,
+    known: BTreeMap<u64, Box<dyn AtSizes>>,
+}
+
+impl Fixed<'_> {
+    fn power(&mut self, step: u64, at: Point) -> Result<f64, NumericsError> {
+        if let Some(known) = self.known.get(&step) {
+            return known.power(at);
+        }
+        let out = NumericsError::TargetOutOfReach { largest: step, best: f64::NAN };
+        let fixed = self.problem.at_sizes(&self.problem.sizes(step).ok_or(out)?)?;
+        let power = fixed.power(at);
+        self.known.insert(step, fixed);
+        power
+    }
+
+    fn smallest(&mut self, at: Point, hint: Option<u64>, largest: u64) -> Result<u64, SolverError> {
+        let target = self.problem.risk().power.get();
+        let lowest = self.problem.smallest_step();
+        integer_search::smallest_rising(lowest, largest, hint, target, |step| self.power(step, at))
+            .map(|found| found.n)
+            .map_err(|error| match error {
+                NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,
+                other => other.into(),
+            })
+    }
+}

@@ -7,9 +7,12 @@ use sufficit::report::figures::{
 
 #[path = "figures/metrics.rs"]
 mod metrics;
+#[path = "figures/struck.rs"]
+mod struck;
 #[path = "figures/svg.rs"]
 mod svg;
 
+use struck::struck;
 use svg::Picture;
 
 const LONG: &str = "freshly isolated hippocampal organotypic slice cultures from heterozygous littermates \
@@ -263,6 +266,46 @@ fn every_text_is_inside_the_canvas_and_on_no_other() {
     }
 }
 
+#[test]
+fn no_line_runs_through_a_text() {
+    for (name, svg) in pictures() {
+        let struck = struck(&Picture::read(&svg));
+        assert!(struck.is_empty(), "{name}: {struck:?}");
+    }
+}
+
+/// Labels of a choice and a ceiling that lie near each other or on one line keep their distance.
+#[test]
+fn near_ceilings_keep_labels_apart() {
+    for chosen in 3..=24 {
+        for distance in [-2.0, -1.0, -0.5, 0.0, 0.5, 1.0, 2.0] {
+            let chosen = f64::from(chosen);
+            let spreads = [0.3, 0.3 + 0.02 * chosen, 0.5 + 0.03 * chosen];
+            let plan = Plan { chosen, spreads, ceiling: Some(chosen + distance), ..PLAN };
+            let svg = power_curve(&curve_data(&plan)).unwrap_or_default();
+            let picture = Picture::read(&svg);
+            assert!(struck(&picture).is_empty(), "{chosen} {distance}: {:?}", struck(&picture));
+            let boxes: Vec<_> = picture.texts.iter().map(svg::Text::bounds).collect();
+            for (index, rect) in boxes.iter().enumerate() {
+                for other in boxes.iter().take(index) {
+                    let across = rect[2].min(other[2]) - rect[0].max(other[0]);
+                    let down = rect[3].min(other[3]) - rect[1].max(other[1]);
+                    assert!(across <= -4.0 || down <= -4.0, "{chosen} {distance}");
+                }
+            }
+        }
+    }
+}
+
+/// Whatever is left out of a long label, its last words stay.
+#[test]
+fn long_curve_labels_keep_their_last_word() {
+    let mut data = curve_data(&PLAN);
+    data.curves[1].label = format!("SD 0.69 {LONG} (planned)");
+    let shown = Picture::read(&power_curve(&data).unwrap_or_default()).words();
+    assert!(shown.contains("SD 0.69 ") && shown.contains('…') && shown.contains("(planned)"));
+}
+
 /// A label moved by hand onto another must be noticed, or the test above would prove nothing.
 #[test]
 fn the_check_notices_an_overlap() {
@@ -326,14 +369,14 @@ fn every_label_that_fits_is_shown_whole() {
     for label in labels.into_iter().chain(data.curves.iter().map(|curve| &curve.label)) {
         assert!(shown.contains(label.as_str()), "{label} is missing in {shown}");
     }
-    let data = contour_data(&SIZES, Some(8.0), (0.9, 0.69), SPANS);
+    let mut data = contour_data(&SIZES, Some(8.0), (0.9, 0.69), SPANS);
+    let ceilings = data.levels.iter_mut().filter(|level| level.ceiling);
+    ceilings.for_each(|level| level.label = "ceiling: 10, 8 after losses".to_owned());
     let picture = Picture::read(&size_contour(&data).unwrap_or_default());
-    for level in &data.levels {
-        assert!(
-            picture.texts.iter().any(|text| text.content == level.label),
-            "{} is missing",
-            level.label
-        );
+    for Level { label, ceiling, .. } in &data.levels {
+        let whole = picture.texts.iter().any(|text| text.content == *label);
+        let wrapped = *ceiling && picture.words().contains(label.as_str());
+        assert!(whole || wrapped, "{label} is missing");
     }
 }
 

@@ -1,5 +1,8 @@
 //! The table of functions that `tabulate` offers; the reference tests call them by the same names.
 
+use sufficit::numerics::discrete::{
+    Alternative, Binomial, Hypergeometric, Poisson, ProportionTest, TwoBinomialRegion,
+};
 use sufficit::numerics::multivariate::{
     BivariateNormal, Dunnett, Sides, StudentizedRange, owen_q, two_one_sided_power,
 };
@@ -157,12 +160,72 @@ const MULTIVARIATE: &[Entry] = &[
     entry!("bivariate_normal_cdf", rho, x, y => BivariateNormal::new(rho)?.cdf(x, y)),
 ];
 
-/// A count of groups or comparisons.
+/// Counts, and the power of tests of two proportions (`sides` 1: the first proportion is the larger one).
+const DISCRETE: &[Entry] = &[
+    entry!("binomial_pmf", n, p, k => Ok(binomial(n, p)?.pmf(whole("k", k)?))),
+    entry!("binomial_cdf", n, p, k => Ok(binomial(n, p)?.cdf(whole("k", k)?))),
+    entry!("binomial_sf", n, p, k => Ok(binomial(n, p)?.sf(whole("k", k)?))),
+    entry!("poisson_pmf", mean, k => Ok(Poisson::new(mean)?.pmf(whole("k", k)?))),
+    entry!("poisson_cdf", mean, k => Ok(Poisson::new(mean)?.cdf(whole("k", k)?))),
+    entry!("poisson_sf", mean, k => Ok(Poisson::new(mean)?.sf(whole("k", k)?))),
+    entry!("hypergeometric_pmf", n1, n2, m, odds_ratio, x => {
+        Ok(hypergeometric(n1, n2, m, odds_ratio)?.pmf(whole("x", x)?))
+    }),
+    entry!("hypergeometric_cdf", n1, n2, m, odds_ratio, x => {
+        Ok(hypergeometric(n1, n2, m, odds_ratio)?.cdf(whole("x", x)?))
+    }),
+    entry!("hypergeometric_sf", n1, n2, m, odds_ratio, x => {
+        Ok(hypergeometric(n1, n2, m, odds_ratio)?.sf(whole("x", x)?))
+    }),
+    entry!("pooled_z_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::PooledZ, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+    entry!("unpooled_z_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::UnpooledZ, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+    entry!("yates_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::Yates, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+    entry!("fisher_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::Fisher, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+    entry!("barnard_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::Barnard, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+    entry!("boschloo_power", n1, n2, p1, p2, alpha, sides => {
+        two_proportions(ProportionTest::Boschloo, [n1, n2], alpha, sides)?.power(p1, p2)
+    }),
+];
+
+fn binomial(n: f64, p: f64) -> Result<Binomial> {
+    Binomial::new(whole("n", n)?, p)
+}
+
+fn hypergeometric(n1: f64, n2: f64, m: f64, odds_ratio: f64) -> Result<Hypergeometric> {
+    let (n1, n2, m) = (whole("n1", n1)?, whole("n2", n2)?, whole("m", m)?);
+    Hypergeometric::with_odds_ratio(n1, n2, m, odds_ratio)
+}
+
+fn two_proportions(
+    test: ProportionTest,
+    sizes: [f64; 2],
+    alpha: f64,
+    sides: f64,
+) -> Result<TwoBinomialRegion> {
+    let alternative = match tested_sides(sides)? {
+        Sides::One => Alternative::FirstLarger,
+        Sides::Two => Alternative::TwoSided,
+    };
+    let [n1, n2] = sizes;
+    TwoBinomialRegion::new(test, whole("n1", n1)?, whole("n2", n2)?, alpha, alternative)
+}
+
+/// A count.
 fn whole(name: &'static str, value: f64) -> Result<u64> {
-    if (1.0..=1e9).contains(&value) && value.floor() == value {
+    if (0.0..=1e15).contains(&value) && value.floor() == value {
         Ok(value as u64)
     } else {
-        Err(NumericsError::OutOfDomain { name, given: value, allowed: "a whole number above 0" })
+        Err(NumericsError::OutOfDomain { name, given: value, allowed: "a whole number" })
     }
 }
 
@@ -201,7 +264,7 @@ fn two_sample_t_power(
 
 /// All functions, in the order in which `--list` prints them.
 pub fn entries() -> impl Iterator<Item = &'static Entry> {
-    [TAILS, DENSITIES, QUANTILES, NONCENTRALITIES, MULTIVARIATE].into_iter().flatten()
+    [TAILS, DENSITIES, QUANTILES, NONCENTRALITIES, MULTIVARIATE, DISCRETE].into_iter().flatten()
 }
 
 /// The value of a function for arguments as they stand in a table, or the name of what is wrong with the call.

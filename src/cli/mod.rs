@@ -8,6 +8,7 @@ mod schema;
 mod solve;
 mod statement;
 mod style;
+mod targets;
 mod verify;
 
 use std::io::Write;
@@ -44,7 +45,7 @@ enum Command {
     Check(check::Arguments),
     /// Print the paragraph to paste.
     Statement(statement::Arguments),
-    /// Check that a document is what its spec gives: hashes, numbers, bytes.
+    /// Check that a document is what its spec gives: hashes, plan, bytes, figures.
     Verify(verify::Arguments),
     /// Print the JSON Schema of the spec.
     Schema(schema::Arguments),

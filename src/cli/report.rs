@@ -1,6 +1,5 @@
 //! `report`: the main job.
 
-use std::ffi::OsStr;
 use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
@@ -8,6 +7,7 @@ use clap::{Args, ValueEnum};
 use super::Outcome;
 use super::files::{self, Output};
 use super::progress::Bar;
+use super::targets::{Format, Target, targets};
 use crate::error::Error;
 use crate::record::documents;
 use crate::render::pdf::FontSet;
@@ -26,27 +26,18 @@ pub(super) struct Arguments {
     /// output.
     #[arg(short, long = "output", value_name = "FILE")]
     output: Vec<PathBuf>,
-    /// Format for standard output.
-    #[arg(long, value_enum, default_value = "md")]
-    format: Format,
+    /// Format for standard output; `md` unless given.
+    #[arg(long, value_enum)]
+    format: Option<Format>,
     /// Replace files that exist.
     #[arg(long)]
     replace: bool,
-    /// Format of the figures beside the Markdown.
-    #[arg(long, value_enum, default_value = "svg")]
-    figures: FigureFormat,
+    /// Format of the figures of the Markdown; `svg` unless given.
+    #[arg(long, value_enum)]
+    figures: Option<FigureFormat>,
     /// Folder with fonts for characters that the built-in fonts lack.
     #[arg(long, value_name = "FOLDER")]
     fonts: Option<PathBuf>,
-}
-
-#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
-enum Format {
-    Pdf,
-    Md,
-    Txt,
-    Json,
-    Typ,
 }
 
 #[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
@@ -56,9 +47,9 @@ enum FigureFormat {
 }
 
 pub(super) fn execute(arguments: &Arguments) -> Result<Outcome, Error> {
-    let targets = targets(arguments)?;
-    let named =
-        targets.iter().filter(|(path, _)| path.as_os_str() != "-").map(|(p, _)| p.as_path());
+    let targets = targets(&arguments.spec, &arguments.output, arguments.format)?;
+    let store = figure_store(arguments, &targets)?;
+    let named = targets.iter().filter(|target| !target.is_stdout()).map(|t| t.path.as_path());
     files::refuse_existing(named, arguments.replace)?;
     let loaded = files::load(&arguments.spec)?;
     let fonts = font_set(arguments.fonts.as_deref())?;
@@ -67,31 +58,25 @@ pub(super) fn execute(arguments: &Arguments) -> Result<Outcome, Error> {
     let json = || documents::plan_json(&plan).map_err(RenderError::Plan);
     let mut outputs = Vec::new();
     let mut printed = Vec::new();
-    for (path, format) in &targets {
-        let to_stdout = path.as_os_str() == "-";
-        let bytes = match format {
+    for target in &targets {
+        let bytes = match target.format {
             Format::Pdf => press.pdf(&fonts)?,
             Format::Txt => statements(&press).into_bytes(),
             Format::Json => json()?.into_bytes(),
             Format::Typ => press.typst()?.main.into_bytes(),
             Format::Md => {
-                let folder = if to_stdout { None } else { Some(figure_folder(path)) };
-                let store = FigureStore { folder, pixels: arguments.figures == FigureFormat::Png };
+                let store = FigureStore { folder: target.figure_folder(), ..store };
                 let document = press.markdown(&store)?;
-                let beside = path.parent().unwrap_or(Path::new(""));
-                outputs.extend(
-                    document
-                        .figures
-                        .into_iter()
-                        .map(|(p, bytes)| Output { path: beside.join(p), bytes }),
-                );
+                let beside = target.path.parent().unwrap_or(Path::new(""));
+                let figures = document.figures.into_iter();
+                outputs.extend(figures.map(|(p, bytes)| Output { path: beside.join(p), bytes }));
                 document.text.into_bytes()
             }
         };
-        if to_stdout {
+        if target.is_stdout() {
             printed.extend(bytes);
         } else {
-            outputs.push(Output { path: path.clone(), bytes });
+            outputs.push(Output { path: target.path.clone(), bytes });
         }
     }
     files::refuse_existing(outputs.iter().map(|o| o.path.as_path()), arguments.replace)?;
@@ -104,58 +89,23 @@ pub(super) fn execute(arguments: &Arguments) -> Result<Outcome, Error> {
     Ok(Outcome::Good)
 }
 
+/// How figures are stored, before their folder is known.
+fn figure_store(arguments: &Arguments, targets: &[Target]) -> Result<FigureStore, Error> {
+    if arguments.figures.is_some() && !targets.iter().any(|target| target.format == Format::Md) {
+        let reason =
+            "`--figures` is the format of the figures of a Markdown, and none is asked for";
+        return Err(Error::Request(reason.to_owned()));
+    }
+    Ok(FigureStore { folder: None, pixels: arguments.figures == Some(FigureFormat::Png) })
+}
+
 /// The statements, each a paragraph of its own.
 pub(super) fn statements(press: &Press<'_>) -> String {
     press.statements().join("\n\n") + "\n"
-}
-
-fn figure_folder(path: &Path) -> String {
-    let stem = path.file_stem().unwrap_or(OsStr::new("report")).to_string_lossy();
-    format!("{stem}-figures")
 }
 
 pub(super) fn font_set(folder: Option<&Path>) -> Result<FontSet, Error> {
     let Some(folder) = folder else { return Ok(FontSet::embedded()) };
     FontSet::embedded_with(files::fonts_in(folder)?)
         .map_err(|error| Error::file(folder.display().to_string(), error))
-}
-
-fn targets(arguments: &Arguments) -> Result<Vec<(PathBuf, Format)>, Error> {
-    if arguments.output.is_empty() {
-        let stem = if arguments.spec.as_os_str() == "-" {
-            PathBuf::from("study")
-        } else {
-            PathBuf::from(arguments.spec.file_stem().unwrap_or(OsStr::new("study")))
-        };
-        let with = |extension: &str| {
-            let mut name = stem.clone().into_os_string();
-            name.push(extension);
-            PathBuf::from(name)
-        };
-        return Ok(vec![(with(".pdf"), Format::Pdf), (with(".md"), Format::Md)]);
-    }
-    arguments
-        .output
-        .iter()
-        .map(|path| {
-            if path.as_os_str() == "-" {
-                return Ok((path.clone(), arguments.format));
-            }
-            let extension = path.extension().unwrap_or_default().to_string_lossy().to_ascii_lowercase();
-            let format = match extension.as_str() {
-                "pdf" => Format::Pdf,
-                "md" | "markdown" => Format::Md,
-                "txt" => Format::Txt,
-                "json" => Format::Json,
-                "typ" => Format::Typ,
-                _ => {
-                    return Err(Error::Request(format!(
-                        "`{}`: the extension chooses the format, and must be .pdf, .md, .txt, .json or .typ",
-                        path.display()
-                    )));
-                }
-            };
-            Ok((path.clone(), format))
-        })
-        .collect()
 }

@@ -88,7 +88,7 @@ impl StudyDesign for ParallelMeans {
         let risk = read_risk(&keys.risk);
         let mut faults = Vec::new();
         if let (Ok(parallel), Ok(risk)) = (&parallel, &risk) {
-            faults.extend(unprotected(parallel, risk, keys.risk.multiplicity.is_some()));
+            faults.extend(contradiction(parallel, risk, keys.risk.multiplicity.is_some()));
         }
         match (parallel, effect, spread, risk) {
             (Ok(parallel), Ok(effect), Ok(spread), Ok(risk)) if faults.is_empty() => {
@@ -105,30 +105,25 @@ impl StudyDesign for ParallelMeans {
     }
 }
 
-/// Šidák's inequality holds for two-sided statistics and for one-sided ones that are positively correlated, as those
-/// against a common control are; among all pairs some are negatively correlated, so the family would be unprotected.
-fn unprotected(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option<Fault> {
-    let alone = parallel.pairs.len() == 1;
-    let at = Path::of("risk.multiplicity");
-    if alone && stated {
-        return Some(
+/// What cannot stand together: a multiplicity without several comparisons, and one-sided tests of all pairs, which have
+/// no common direction (and for which Šidák's inequality is not proved, since some statistics correlate negatively).
+fn contradiction(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option<Fault> {
+    if parallel.pairs.len() == 1 {
+        return stated.then(|| {
             Fault::key(
-                at,
+                Path::of("risk.multiplicity"),
                 "there is one comparison, so there is no multiplicity to protect against",
             )
-            .help("drop `multiplicity`"),
-        );
+            .help("drop `multiplicity`")
+        });
     }
-    let sidak_one_sided = risk.multiplicity == Multiplicity::Sidak
-        && risk.risk.sides == Sides::One
-        && parallel.compare == Compare::AllPairs
-        && !alone;
-    sidak_one_sided.then(|| {
+    let undirected = risk.risk.sides == Sides::One && parallel.compare == Compare::AllPairs;
+    undirected.then(|| {
         Fault::value(
-            at,
-            "the Šidák level is not proved to protect one-sided comparisons of all pairs",
+            Path::of("risk.sides"),
+            "a one-sided test needs one direction, but all pairs of several groups are compared",
         )
-        .help("choose `bonferroni`, or test two-sided")
+        .help("test two-sided, or compare each group with a control (`compare: against-control`)")
     })
 }
 
@@ -198,10 +193,10 @@ impl Means {
         self.parallel.pairs.iter().map(|p| self.pair_factor(sizes, *p)).fold(0.0, f64::max)
     }
 
-    /// The same for sizes relative to the smallest group, as the textbook formula takes it.
+    /// The same for sizes relative to the largest group, as the textbook formula takes it.
     fn relative_factor(&self) -> f64 {
-        let smallest = self.parallel.smallest_weight();
-        let share = |g: usize| self.parallel.groups.get(g).map_or(1.0, |g| g.weight / smallest);
+        let largest = self.parallel.largest_weight();
+        let share = |g: usize| self.parallel.groups.get(g).map_or(1.0, |g| g.weight / largest);
         let of_pair = |&(i, j): &(usize, usize)| (1.0 / share(i) + 1.0 / share(j)).sqrt();
         self.parallel.pairs.iter().map(of_pair).fold(0.0, f64::max)
     }
@@ -221,15 +216,15 @@ impl Means {
         Ok((z_alpha, z_beta))
     }
 
-    /// The sizes that belong to an unrounded size of the smallest group: each group rounded up on its own.
+    /// The sizes that belong to an unrounded size of the largest group: each group rounded up on its own.
     fn rounded_up(&self, step: f64) -> Option<Sizes> {
         let step = step.max(self.smallest_step() as f64);
         if step > LARGEST_SIZE as f64 {
             return None;
         }
-        let smallest = self.parallel.smallest_weight();
+        let largest = self.parallel.largest_weight();
         let up =
-            |g: &Group| (step * (g.weight / smallest) * (1.0 - 4.0 * f64::EPSILON)).ceil() as u64;
+            |g: &Group| (step * (g.weight / largest) * (1.0 - 4.0 * f64::EPSILON)).ceil() as u64;
         let per_group: Vec<_> = self.parallel.groups.iter().map(up).collect();
         let total = per_group.iter().sum();
         Some(Sizes { step: step.ceil() as u64, per_group, total })
@@ -299,12 +294,12 @@ impl Problem for Means {
         &self.effect
     }
 
-    fn spread(&self) -> &Spread {
-        &self.spread
+    fn spread(&self) -> Option<&Spread> {
+        Some(&self.spread)
     }
 
     fn smallest_step(&self) -> u64 {
-        2
+        self.parallel.smallest_step()
     }
 
     fn sizes(&self, step: u64) -> Option<Sizes> {
@@ -366,7 +361,8 @@ impl Problem for Means {
     fn rivals(&self) -> numerics::Result<Vec<Rival>> {
         let mut rivals = Vec::new();
         let risk = self.risk.risk;
-        if self.parallel.is_balanced()
+        if self.comparisons() == 1
+            && self.parallel.is_balanced()
             && let Some(textbook) = self.textbook(self.planned())?
         {
             let step = textbook.step + textbook.z_alpha * textbook.z_alpha / 4.0;
@@ -378,7 +374,7 @@ impl Problem for Means {
                 0.9 => Some(21.0),
                 _ => None,
             };
-            if let (true, 1, Some(multiplier)) = (conventional, self.comparisons(), multiplier) {
+            if let (true, Some(multiplier)) = (conventional, multiplier) {
                 let ratio = at.nuisance / at.effect;
                 rivals.extend(self.formula("lehr", "lehr-1992", multiplier * ratio * ratio));
             }
@@ -391,9 +387,7 @@ impl Problem for Means {
             ] {
                 let mut problem = self.clone();
                 problem.risk.multiplicity = other;
-                if other != self.risk.multiplicity
-                    && unprotected(&problem.parallel, &problem.risk, true).is_none()
-                {
+                if other != self.risk.multiplicity {
                     let answer = RivalAnswer::Exact(Box::new(problem));
                     rivals.push(Rival { id, source: None, answer });
                 }

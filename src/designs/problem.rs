@@ -23,7 +23,7 @@ pub struct Group {
 /// Sizes of the groups in the analysis.
 #[derive(Debug, Clone, PartialEq, Eq, Serialize)]
 pub struct Sizes {
-    /// Size of the group with the smallest weight, the number that a search raises by one at a time.
+    /// Size of the group with the largest weight, the number that a search raises by one at a time.
     pub step: u64,
     /// Size of each group.
     pub per_group: Vec<u64>,
@@ -36,7 +36,7 @@ pub struct Sizes {
 pub struct Point {
     /// The effect, in the unit of the outcome where it has one.
     pub effect: f64,
-    /// The nuisance value: a standard deviation, a control proportion, a rate.
+    /// The nuisance value: a standard deviation, a control proportion, a rate; 1 where the design has none.
     pub nuisance: f64,
 }
 
@@ -68,7 +68,7 @@ pub struct Effect {
 /// Result of a formula that can be redone on paper.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct Textbook {
-    /// The unrounded size of the group with the smallest weight.
+    /// The unrounded size of the group with the largest weight.
     pub step: f64,
     /// The same with the quantiles rounded to two decimals, as a printed table gives them.
     pub step_with_table_quantiles: f64,
@@ -94,7 +94,7 @@ pub struct Rival {
 /// What another method gives, or what must be solved to know it.
 #[derive(Debug)]
 pub enum RivalAnswer {
-    /// A closed formula: the unrounded size of the group with the smallest weight, and the sizes rounded up.
+    /// A closed formula: the unrounded size of the group with the largest weight, and the sizes rounded up.
     Formula {
         /// Unrounded.
         step: f64,
@@ -178,20 +178,25 @@ pub trait Problem: Debug + Send + Sync {
     /// The wanted effect.
     fn effect(&self) -> &Effect;
 
-    /// The nuisance value and its evidence.
-    fn spread(&self) -> &Spread;
+    /// The nuisance value and its evidence, where the design has one.
+    fn spread(&self) -> Option<&Spread>;
 
     /// The planned point.
     fn planned(&self) -> Point {
-        Point { effect: self.effect().planned.value.abs(), nuisance: self.spread().sd }
+        let nuisance = self.spread().map_or(1.0, |spread| spread.sd);
+        Point { effect: self.effect().planned.value.abs(), nuisance }
     }
 
     /// The smallest step for which the analysis exists.
     fn smallest_step(&self) -> u64;
 
-    /// Sizes of all groups when the group with the smallest weight has `step` units: each is
-    /// `ceil(step * weight)`, exact. `None` when a size would exceed [`crate::quantities::LARGEST_SIZE`].
+    /// Sizes of all groups when the group with the largest weight has `step` units; no group shrinks as it grows. `None` when a size would exceed [`crate::quantities::LARGEST_SIZE`].
     fn sizes(&self, step: u64) -> Option<Sizes>;
+
+    /// Whether the analysis exists at sizes that need not belong to a step, such as those left after losses.
+    fn is_possible(&self, sizes: &Sizes) -> bool {
+        sizes.per_group.iter().all(|n| *n >= 2)
+    }
 
     /// The analysis at fixed sizes.
     ///

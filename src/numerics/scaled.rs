@@ -20,7 +20,15 @@ impl Scaled {
 
     /// The number itself; zero when it is below the range of `f64`.
     pub fn value(self) -> f64 {
-        if self.exponent == 0.0 { self.factor } else { self.factor * libm::exp(self.exponent) }
+        if self.exponent == 0.0 {
+            self.factor
+        } else if self.exponent > -700.0 {
+            self.factor * libm::exp(self.exponent)
+        } else {
+            // The scale alone may be below the normal numbers while the product is not: apply it in two halves.
+            let half = libm::exp(0.5 * self.exponent);
+            self.factor * half * half
+        }
     }
 
     /// Natural logarithm; minus infinity for zero.
@@ -52,6 +60,17 @@ impl Scaled {
     }
 }
 
+/// The value, or the bound that rounding carried it past; not a number stays what it is.
+fn clipped(value: f64, low: f64, high: f64) -> f64 {
+    if value > high {
+        high
+    } else if value < low {
+        low
+    } else {
+        value
+    }
+}
+
 /// The two tails of a probability, of which one was computed directly and the other is its complement.
 #[derive(Clone, Copy, Debug)]
 pub(crate) enum Tails {
@@ -65,8 +84,8 @@ impl Tails {
     /// Probability of the lower tail.
     pub fn lower(self) -> f64 {
         match self {
-            Self::Lower(tail) => tail.value().min(1.0),
-            Self::Upper(tail) => (1.0 - tail.value()).max(0.0),
+            Self::Lower(tail) => clipped(tail.value(), 0.0, 1.0),
+            Self::Upper(tail) => clipped(1.0 - tail.value(), 0.0, 1.0),
         }
     }
 
@@ -91,8 +110,8 @@ impl Tails {
     /// Logarithm of the lower tail.
     pub fn ln_lower(self) -> f64 {
         match self {
-            Self::Lower(tail) => tail.ln().min(0.0),
-            Self::Upper(tail) => libm::log1p(-tail.value().min(1.0)),
+            Self::Lower(tail) => clipped(tail.ln(), f64::NEG_INFINITY, 0.0),
+            Self::Upper(tail) => libm::log1p(-clipped(tail.value(), 0.0, 1.0)),
         }
     }
 

@@ -77,8 +77,8 @@ pub struct ExperimentPlan {
     pub risk: Risk,
     /// The wanted effect.
     pub effect: Effect,
-    /// The standard deviation and its evidence.
-    pub spread: Spread,
+    /// The nuisance value and its evidence, where the design has one.
+    pub spread: Option<Spread>,
     /// The planned point.
     pub planned: Point,
     /// What the design's own fragments print.
@@ -103,8 +103,8 @@ pub struct ExperimentPlan {
     pub rivals: Vec<RivalPlan>,
     /// What would lower the number.
     pub levers: Vec<LeverPlan>,
-    /// The independent check; absent when it was switched off or the study is too large to simulate.
-    pub check: Option<Check>,
+    /// The independent check, or why there is none.
+    pub check: CheckOutcome,
     /// Safeguards against bias.
     pub safeguards: Safeguards,
 }
@@ -167,6 +167,15 @@ pub struct CeilingPlan {
     pub remain: Sizes,
     /// Whether the request fits under the ceiling.
     pub fits: bool,
+    /// What that study can do; absent when so few units remain that the analysis does not exist.
+    pub outlook: Option<Outlook>,
+    /// The smallest step for which the analysis exists.
+    pub smallest_step: u64,
+}
+
+/// What a study under a ceiling can do.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Outlook {
     /// Exact power at the wanted effect.
     pub power: f64,
     /// Exact power if nothing is lost.
@@ -177,27 +186,46 @@ pub struct CeilingPlan {
     pub textbook_detectable: f64,
     /// Power by the textbook formula.
     pub textbook_power: f64,
+    /// Exact power at the other of two stated effects.
+    pub other_power: Option<f64>,
 }
 
 /// How firm the number is.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct Firmness {
-    /// A kinder and a harsher spread.
-    pub low: Bound,
-    /// The harsher one.
-    pub high: Bound,
-    /// Whether the bounds are confidence limits (with their level) or a conventional span.
-    pub limits_level: Option<f64>,
+    /// What a kinder and a harsher nuisance value would mean, where the design has one.
+    pub bounds: Option<Bounds>,
     /// Effects of the table's rows.
     pub table_effects: Vec<f64>,
-    /// Spreads of the table's columns.
-    pub table_spreads: Vec<f64>,
-    /// Step of the sizes for each effect (row) and spread (column); absent when out of reach.
+    /// What the table's columns are: nuisance values, or powers where the design has no nuisance value.
+    pub table_columns: Columns,
+    /// Step of the sizes for each effect (row) and column; absent when out of reach.
     pub table: Vec<Vec<Option<u64>>>,
     /// Power against size.
     pub curves: Curves,
-    /// Lines of equal size over effect and spread.
-    pub contours: Contours,
+    /// Lines of equal size over effect and nuisance value, where the design has one.
+    pub contours: Option<Contours>,
+}
+
+/// Columns of the table of sizes.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Columns {
+    /// Nuisance values: low, planned, high.
+    Spreads(Vec<f64>),
+    /// Powers to aim for.
+    Powers(Vec<f64>),
+}
+
+/// A kinder and a harsher nuisance value.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Bounds {
+    /// The kinder one.
+    pub low: Bound,
+    /// The harsher one.
+    pub high: Bound,
+    /// Level of the confidence limits; absent when the bounds are a conventional span.
+    pub limits_level: Option<f64>,
 }
 
 /// A bound of the spread and what follows from it.
@@ -218,9 +246,9 @@ pub struct Curves {
     pub steps: Vec<u64>,
     /// Power at the planned spread.
     pub planned: Vec<f64>,
-    /// Power at the low spread.
+    /// Power at the low spread; empty where the design has none.
     pub low: Vec<f64>,
-    /// Power at the high spread.
+    /// Power at the high spread; empty where the design has none.
     pub high: Vec<f64>,
 }
 
@@ -279,6 +307,18 @@ pub struct LeverPlan {
     pub sizes: Sizes,
     /// Units saved in the analysis (negative when it costs units).
     pub saved: i64,
+}
+
+/// The independent check, or why there is none.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "snake_case", tag = "outcome")]
+pub enum CheckOutcome {
+    /// It was run.
+    Run(Check),
+    /// The spec asks for no simulated studies.
+    SwitchedOff,
+    /// A single study draws so many values that a useful number of studies is out of proportion.
+    TooLarge,
 }
 
 /// The independent check by simulation.

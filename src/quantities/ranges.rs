@@ -107,8 +107,66 @@ pub struct OutOfRange {
 
 impl fmt::Display for OutOfRange {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{} is {}; it {}", self.range.name, self.given, self.range.advice)
+        let given = Written(self.given);
+        write!(f, "{} is {given}; it {}", self.range.name, self.range.advice)
     }
 }
 
 impl std::error::Error for OutOfRange {}
+
+/// A number as a message shows it: with all its digits, but in scientific form where most of them would be zeros
+/// (below 1e-5 or from 1e16 on).
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Written(pub f64);
+
+impl fmt::Display for Written {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let size = self.0.abs();
+        if size == 0.0 || (1e-5..1e16).contains(&size) || !self.0.is_finite() {
+            write!(f, "{}", self.0)
+        } else {
+            write!(f, "{:e}", self.0)
+        }
+    }
+}
+
+/// A whole number as a message shows it: its digits in threes, parted by spaces.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Grouped(pub u64);
+
+impl fmt::Display for Grouped {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let digits = self.0.to_string();
+        for (position, digit) in digits.chars().enumerate() {
+            if position > 0 && (digits.len() - position) % 3 == 0 {
+                f.write_str(" ")?;
+            }
+            write!(f, "{digit}")?;
+        }
+        Ok(())
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn numbers_are_written_without_rows_of_zeros() {
+        let shown = |value: f64| Written(value).to_string();
+        assert_eq!([0.0, 0.05, -2.0, 1e6].map(shown), ["0", "0.05", "-2", "1000000"]);
+        assert_eq!([1e-300, -1e-300, 2.5e200].map(shown), ["1e-300", "-1e-300", "2.5e200"]);
+        assert_eq!([f64::NAN, f64::INFINITY].map(shown), ["NaN", "inf"]);
+        let out = SPREAD.check(1e-300).map_err(|out| out.to_string());
+        assert!(out.is_err_and(|said| said.starts_with("the standard deviation is 1e-300; it ")));
+    }
+
+    #[test]
+    fn digits_stand_in_threes() {
+        let shown = |value: u64| Grouped(value).to_string();
+        assert_eq!(
+            [7, 100, 1234, 1_000_000_000].map(shown),
+            ["7", "100", "1 234", "1 000 000 000"]
+        );
+    }
+}

@@ -1,5 +1,7 @@
 //! Takes the inputs out of a document, recomputes everything, and says for each step whether it agrees.
 
+mod difference;
+
 use std::collections::BTreeMap;
 
 use serde::Deserialize;
@@ -13,7 +15,7 @@ use crate::plan::Plan;
 use crate::render::FigureStore;
 use crate::render::pdf::FontSet;
 use crate::solver::Progress;
-use crate::spec::{self, InputFile, Loaded, MemoryFolder};
+use crate::spec::{self, InputFile, Loaded, MemoryFolder, printable};
 
 /// One step of a verification.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -22,9 +24,12 @@ pub struct Finding {
     pub what: &'static str,
     /// Whether it agrees.
     pub verdict: Verdict,
-    /// What was found.
+    /// What was found, in one line or more, safe to print on a terminal.
     pub detail: String,
 }
+
+/// Characters of a line of a detail; more come only from a document that was made to annoy.
+const LONGEST_LINE: usize = 2000;
 
 /// Whether a step agrees.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -51,7 +56,9 @@ impl Finding {
             true => (Verdict::Agrees, good.into()),
             false => (Verdict::Differs, bad.into()),
         };
-        Self { what, verdict, detail }
+        // Names and versions come from the document, and end up on a terminal.
+        let lines: Vec<_> = detail.lines().map(|line| printable(line, LONGEST_LINE)).collect();
+        Self { what, verdict, detail: lines.join("\n") }
     }
 }
 
@@ -61,6 +68,7 @@ struct Claims {
     /// SHA-256 of each input, by name; the spec has the empty name.
     hashes: BTreeMap<String, String>,
     plan: ClaimedPlan,
+    /// Where a Markdown keeps its figures; a PDF has none.
     store: Option<FigureStore>,
 }
 
@@ -69,13 +77,17 @@ enum ClaimedPlan {
     Sha256(String),
 }
 
-/// Verifies a PDF or a Markdown.
+/// Gives the content of a file in a folder beside the document, by a path of two names parted by `/`.
+pub type Beside<'a> = dyn Fn(&str) -> std::io::Result<Vec<u8>> + 'a;
+
+/// Verifies a PDF or a Markdown, and the figures beside the Markdown.
 ///
 /// # Errors
 ///
 /// A file that is neither, or whose attachments cannot be read. A disagreement is no error but a finding.
 pub fn verify(
     document: &[u8],
+    beside: &Beside<'_>,
     fonts: &FontSet,
     progress: &dyn Progress,
 ) -> Result<Vec<Finding>, Error> {
@@ -100,19 +112,28 @@ pub fn verify(
         Ok(loaded) => loaded,
         Err(error) => {
             let detail = format!("cannot be recomputed: {error}");
-            findings.push(Finding::new("numbers", false, "", detail.trim_end()));
+            findings.push(Finding::new("plan", false, "", detail.trim_end()));
             return Ok(findings);
         }
     };
     let plan = match documents::solve(&loaded, progress) {
         Ok(plan) => plan,
         Err(error) => {
-            findings.push(Finding::new("numbers", false, "", error.to_string()));
+            findings.push(Finding::new("plan", false, "", error.to_string()));
             return Ok(findings);
         }
     };
-    findings.push(numbers(&plan, &claims)?);
-    findings.push(rendered(document, is_pdf, &loaded, &plan, &claims, fonts)?);
+    findings.push(same_plan(&plan, &claims)?);
+    let press = documents::press(&loaded, &plan)?;
+    match &claims.store {
+        None => findings.push(same_pdf(document, &press.pdf(fonts)?)),
+        Some(store) => {
+            let again = press.markdown(store)?;
+            findings.push(same_markdown(document, &again.text));
+            let folder = store.folder.as_deref();
+            findings.extend(folder.map(|folder| same_figures(folder, &again.figures, beside)));
+        }
+    }
     Ok(findings)
 }
 
@@ -137,42 +158,54 @@ fn hashes(files: &[Attachment], claims: &Claims) -> Finding {
     Finding::new("hashes", wrong.is_empty(), "SHA-256 of every input as stated", wrong.join("; "))
 }
 
-fn numbers(plan: &Plan, claims: &Claims) -> Result<Finding, Error> {
+fn same_plan(plan: &Plan, claims: &Claims) -> Result<Finding, Error> {
     let json = documents::plan_json(plan).map_err(crate::render::RenderError::Plan)?;
     let agrees = match &claims.plan {
         ClaimedPlan::Text(bytes) => bytes == json.as_bytes(),
         ClaimedPlan::Sha256(hash) => *hash == sha256_hex(json.as_bytes()),
     };
     Ok(Finding::new(
-        "numbers",
+        "plan",
         agrees,
         "the recomputed plan equals the document's",
         "the recomputed plan is not the document's",
     ))
 }
 
-fn rendered(
-    document: &[u8],
-    is_pdf: bool,
-    loaded: &Loaded,
-    plan: &Plan,
-    claims: &Claims,
-    fonts: &FontSet,
-) -> Result<Finding, Error> {
-    let press = documents::press(loaded, plan)?;
-    let again = match (&claims.store, is_pdf) {
-        (_, true) => press.pdf(fonts)?,
-        (Some(store), false) => press.markdown(store)?.text.into_bytes(),
-        (None, false) => Vec::new(),
-    };
+/// Another build may render otherwise under the same version number, so a disagreement speaks of this program alone.
+const AGAIN: &str = "rendered again by this program";
+
+fn same_pdf(document: &[u8], again: &[u8]) -> Finding {
     let place = again.iter().zip(document).position(|(a, b)| a != b);
     let place = place.unwrap_or(again.len().min(document.len()));
-    Ok(Finding::new(
+    Finding::new(
         "document",
         again == document,
-        "rendered again, byte for byte",
-        format!("rendered again, it differs from byte {place} on"),
-    ))
+        format!("{AGAIN}, it is the same byte for byte"),
+        format!("{AGAIN}, it differs from byte {place} on"),
+    )
+}
+
+fn same_markdown(document: &[u8], again: &str) -> Finding {
+    let wrong = difference::of_markdown(&String::from_utf8_lossy(document), again);
+    Finding::new(
+        "document",
+        wrong.is_none() && document == again.as_bytes(),
+        format!("{AGAIN}, it is the same byte for byte"),
+        format!("{AGAIN}: {}", wrong.unwrap_or_default()),
+    )
+}
+
+fn same_figures(folder: &str, again: &[(String, Vec<u8>)], beside: &Beside<'_>) -> Finding {
+    let wrong = difference::of_figures(folder, again, beside);
+    let count = again.len();
+    let several = if count == 1 { "file" } else { "files" };
+    Finding::new(
+        "figures",
+        wrong.is_empty(),
+        format!("{count} {several} in {folder}, the same byte for byte"),
+        wrong.join("; "),
+    )
 }
 
 #[derive(Deserialize)]
@@ -214,6 +247,8 @@ fn from_pdf(document: &[u8]) -> Result<(Vec<Attachment>, Claims), RecordError> {
 
 fn from_markdown(document: &[u8]) -> Result<(Vec<Attachment>, Claims), RecordError> {
     let text = std::str::from_utf8(document).map_err(|_| RecordError::NeitherPdfNorMarkdown)?;
+    // Changed line ends are a finding, and must not hide the others.
+    let text = text.replace("\r\n", "\n");
     let matter = text
         .strip_prefix("---\n")
         .and_then(|rest| rest.split_once("\n---\n"))
@@ -240,5 +275,5 @@ fn from_markdown(document: &[u8]) -> Result<(Vec<Attachment>, Claims), RecordErr
         plan: ClaimedPlan::Sha256(word("plan-sha256")),
         store: Some(store),
     };
-    Ok((markdown::extract(text)?, claims))
+    Ok((markdown::extract(&text)?, claims))
 }

@@ -26,7 +26,7 @@ impl Face {
     /// Text that this face shows literally, whatever characters it holds.
     pub fn escape(self, text: &str) -> String {
         match self {
-            Self::Typst => format!("#{};", typst_string(text)),
+            Self::Typst => format!("#{};", typst_string(&breakable(text))),
             Self::Markdown => markdown(text),
             Self::Text => text.to_owned(),
         }
@@ -63,6 +63,27 @@ impl Face {
         }
         text
     }
+}
+
+/// Longest run without a space that a column of a table can be counted on to hold.
+const LONGEST_RUN: usize = 40;
+
+/// The same text with invisible places to break in runs that no line could hold.
+fn breakable(text: &str) -> std::borrow::Cow<'_, str> {
+    if text.split(char::is_whitespace).all(|run| run.chars().count() <= LONGEST_RUN) {
+        return text.into();
+    }
+    let mut broken = String::with_capacity(text.len() + 16);
+    let mut run = 0;
+    for character in text.chars() {
+        run = if character.is_whitespace() { 0 } else { run + 1 };
+        if run > LONGEST_RUN / 2 {
+            broken.push('\u{200b}');
+            run = 1;
+        }
+        broken.push(character);
+    }
+    broken.into()
 }
 
 /// A string literal of Typst code.

@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 
 use super::error::RenderError;
 use super::figures;
-use crate::plan::{ExperimentPlan, Firmness};
+use crate::plan::{Bounds, Contours, ExperimentPlan};
 use crate::report::FigureView;
 use crate::report::figures::{
     Assumed, Axis, Curve, Level, Mark, PowerCurve, Rule, SizeContour, SpreadLimits,
@@ -44,15 +44,18 @@ pub(super) fn draw(
         sentence,
         svg: figures::power_curve(&power)?,
     };
-    let sentence = labels.text("contour_sentence")?;
-    let contour = size_contour(plan, labels, &sentence, &write, locale)?;
-    let contour = FigureView {
-        kind: "contour",
-        path: String::new(),
-        sentence,
-        svg: figures::size_contour(&contour)?,
-    };
-    Ok(vec![power, contour])
+    let mut drawn = vec![power];
+    if let (Some(contours), Some(bounds)) = (&plan.firmness.contours, &plan.firmness.bounds) {
+        let sentence = labels.text("contour_sentence")?;
+        let contour = size_contour(plan, (contours, bounds), labels, &sentence, locale)?;
+        drawn.push(FigureView {
+            kind: "contour",
+            path: String::new(),
+            sentence,
+            svg: figures::size_contour(&contour)?,
+        });
+    }
+    Ok(drawn)
 }
 
 fn power_curve(
@@ -69,20 +72,21 @@ fn power_curve(
     let first = data.steps.first().map_or(0.0, |n| *n as f64);
     let last = data.steps.last().map_or(1.0, |n| *n as f64);
     let ceiling = match &plan.ceiling {
-        Some(ceiling) => {
+        Some(ceiling) if ceiling.outlook.is_some() => {
             Some(Rule { at: ceiling.remain.step as f64, label: labels.text("ceiling")? })
         }
-        None => None,
+        _ => None,
     };
+    let mut curves = vec![curve(Assumed::Planned, "planned", &data.planned)?];
+    if plan.firmness.bounds.is_some() {
+        curves.insert(0, curve(Assumed::Low, "low", &data.low)?);
+        curves.push(curve(Assumed::High, "high", &data.high)?);
+    }
     Ok(PowerCurve {
         description: sentence.to_owned(),
         x: Axis::counts(labels.text("power_x")?, (first, last), write),
         y: Axis::probability(labels.text("power_y")?, write),
-        curves: vec![
-            curve(Assumed::Low, "low", &data.low)?,
-            curve(Assumed::Planned, "planned", &data.planned)?,
-            curve(Assumed::High, "high", &data.high)?,
-        ],
+        curves,
         target: Rule { at: plan.risk.power.get(), label: labels.text("target")? },
         chosen: Mark {
             x: plan.exact.sizes.step as f64,
@@ -95,12 +99,12 @@ fn power_curve(
 
 fn size_contour(
     plan: &ExperimentPlan,
+    (contours, bounds): (&Contours, &Bounds),
     labels: &Labels,
     sentence: &str,
-    write: &dyn Fn(f64, usize) -> String,
     locale: &Locale,
 ) -> Result<SizeContour, RenderError> {
-    let Firmness { contours, low, high, .. } = &plan.firmness;
+    let write = |value: f64, decimals: usize| locale.fixed(value, decimals);
     let ceiling_label = labels.text("ceiling_level")?;
     let levels = contours.lines.iter().map(|line| Level {
         size: line.step as f64,
@@ -122,8 +126,8 @@ fn size_contour(
         levels: levels.collect(),
         plan: Mark { x: planned.effect, y: planned.nuisance, label: labels.text("plan")? },
         limits: Some(SpreadLimits {
-            low: low.spread,
-            high: high.spread,
+            low: bounds.low.spread,
+            high: bounds.high.spread,
             label: labels.text("limits")?,
         }),
     })

@@ -5,6 +5,8 @@ use std::sync::Arc;
 use base64::Engine;
 use base64::engine::general_purpose::STANDARD;
 use minijinja::value::{Serde, Value};
+use serde::Serialize;
+use sha2::{Digest, Sha256};
 
 use super::error::RenderError;
 use super::faces::Face;
@@ -43,6 +45,13 @@ pub struct MarkdownDocument {
     pub text: String,
     /// Path relative to the document, and content, of each figure.
     pub figures: Vec<(String, Vec<u8>)>,
+}
+
+/// A figure beside a Markdown document, as its front matter names it.
+#[derive(Serialize)]
+struct FigureFile {
+    name: String,
+    sha256: String,
 }
 
 /// Where a Markdown document keeps its figures.
@@ -148,6 +157,7 @@ impl<'a> Press<'a> {
     pub fn markdown(&self, store: &FigureStore) -> Result<MarkdownDocument, RenderError> {
         let templates = Templates::new(Face::Markdown, self.locale, &self.bibliography)?;
         let mut figures = Vec::new();
+        let mut files = Vec::new();
         let mut paths = Vec::new();
         for figure in self.figures() {
             let bytes = match store.pixels {
@@ -156,8 +166,12 @@ impl<'a> Press<'a> {
             };
             match &store.folder {
                 Some(folder) => {
-                    let path = format!("{folder}/{}.{}", figure_name(figure), store.extension());
+                    let name = format!("{}.{}", figure_name(figure), store.extension());
+                    let path = format!("{folder}/{name}");
                     paths.push(path.clone());
+                    let sha256 =
+                        Sha256::digest(&bytes).iter().map(|b| format!("{b:02x}")).collect();
+                    files.push(FigureFile { name, sha256 });
                     figures.push((path, bytes));
                 }
                 None => paths.push(store.inline(&bytes)),
@@ -168,6 +182,7 @@ impl<'a> Press<'a> {
         let context = minijinja::context! {
             figures_folder => store.folder.as_deref().unwrap_or(""),
             figure_format => store.extension(),
+            figure_files => Value::from(Serde(files)),
             ..Value::from(Serde(context))
         };
         Ok(MarkdownDocument { text: tidy(&templates.render("document.j2", &context)?), figures })

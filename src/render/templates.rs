@@ -140,10 +140,18 @@ fn add_numbers(environment: &mut Environment<'static>, face: Face, locale: &'sta
         locale.significant(value, digits)
     });
     environment.add_filter("percent", move |value: f64| locale.percent(value));
+    environment.add_filter("power", move |value: f64| locale.power(value));
+    environment.add_filter("complement", move |value: f64| locale.complement(value));
     environment.add_filter("probability", move |value: f64| locale.probability(value));
     environment.add_filter("listed", move |words: Vec<String>| locale.list(&words));
     environment.add_filter("math", move |number: String| {
         Value::from_safe_string(face.in_formula(&number))
+    });
+    // A number that is raised to a power stands in brackets when it is itself a product.
+    environment.add_filter("base", move |number: String| {
+        let text = face.in_formula(&number);
+        let text = if number.contains('×') { format!("({text})") } else { text };
+        Value::from_safe_string(text)
     });
 }
 

@@ -29,10 +29,16 @@ pub fn build<'a>(plan: &'a Plan, locale: &Locale, attachments: Vec<AttachmentVie
 
 fn view((position, plan): (usize, &ExperimentPlan)) -> ExperimentView<'_> {
     let all_equal = |sizes: &[u64]| sizes.windows(2).all(|pair| pair.first() == pair.last());
+    let smallest = match &plan.spread {
+        Some(spread) => plan.planned.effect.min(spread.sd),
+        None => plan.planned.effect,
+    };
+    let decimals = decimals_for(smallest, 3);
     ExperimentView {
         plan,
         number: position + 1,
-        decimals: decimals_for(plan.planned.effect.min(plan.planned.nuisance), 3),
+        decimals,
+        table_decimals: table_decimals(&plan.firmness.table_effects, decimals),
         even: all_equal(&plan.exact.sizes.per_group),
         even_start: all_equal(&plan.request.per_group),
         figures: Vec::new(),
@@ -40,4 +46,15 @@ fn view((position, plan): (usize, &ExperimentPlan)) -> ExperimentView<'_> {
         statement_characters: 0,
         statement_words: 0,
     }
+}
+
+/// The fewest decimals that show every value as it is, up to two more than usual.
+fn table_decimals(values: &[f64], usual: usize) -> usize {
+    let shown = |decimals: &usize| {
+        values.iter().all(|value| {
+            let text = format!("{value:.*}", *decimals);
+            text.parse::<f64>().is_ok_and(|back| (back - value).abs() <= 1e-9 * value.abs())
+        })
+    };
+    (0..=usual + 2).find(shown).unwrap_or(usual)
 }

@@ -93,7 +93,7 @@ const DELTA2: [Item; 7] = [
     ("DELTA2", "1", Topic::Outcome, "question"),
     ("DELTA2", "2", Topic::ErrorRates, "design"),
     ("DELTA2", "3b", Topic::Target, "inputs"),
-    ("DELTA2", "4", Topic::Allocation, "calculation"),
+    ("DELTA2", "4", Topic::Allocation, "design"),
     ("DELTA2", "5", Topic::Adjustments, "calculation"),
     ("DELTA2", "6", Topic::Basis, "inputs"),
     ("DELTA2", "7", Topic::SpreadSource, "inputs"),
@@ -146,7 +146,9 @@ pub fn checklist(plan: &Plan) -> Vec<ChecklistRow> {
 fn is_open(experiment: &ExperimentPlan, topic: Topic) -> bool {
     let basis = experiment.effect.basis == EffectBasis::Unstated
         || experiment.effect.planned.grounds.is_open();
-    let spread = experiment.spread.grounds.is_open();
+    let spread = experiment.spread.as_ref().is_some_and(|spread| spread.grounds.is_open());
+    let fact = |key: &str| experiment.analysis.get(key);
+    let unequal = fact("balanced").is_some_and(|balanced| balanced == false);
     let losses = !experiment.losses.stated;
     let safeguards = &experiment.safeguards;
     match topic {
@@ -154,6 +156,9 @@ fn is_open(experiment: &ExperimentPlan, topic: Topic) -> bool {
         Topic::SpreadSource => spread,
         Topic::Adjustments => losses,
         Topic::Calculation | Topic::Assumptions => basis || spread || losses,
+        Topic::Allocation => {
+            unequal && fact("allocation_why").is_none_or(serde_json::Value::is_null)
+        }
         Topic::Exclusions => safeguards.exclusions.is_none(),
         Topic::Randomisation => safeguards.randomisation.is_none(),
         Topic::Blinding => safeguards.blinding.is_none(),
@@ -165,7 +170,6 @@ fn is_open(experiment: &ExperimentPlan, topic: Topic) -> bool {
         | Topic::Analysis
         | Topic::ErrorRates
         | Topic::Target
-        | Topic::Allocation
         | Topic::Reduction
         | Topic::Sensitivity => false,
     }

@@ -31,32 +31,95 @@ pub struct Axis {
 
 /// Ticks that an axis is given, about.
 const TICKS: usize = 6;
+/// Most decimals of a tick on an axis without a power of ten.
+const DECIMALS: usize = 4;
+/// Largest tick on an axis without a power of ten.
+const LARGEST: f64 = 1e6;
 
 impl Axis {
     /// An axis of real numbers with round ticks; `write` sets a number with so many decimals.
+    ///
+    /// Ticks above a million or of more than four decimals are divided by a power of ten, which joins the unit at
+    /// the end of the title: "mass (g)" becomes "mass (× 10⁻⁹ g)", a title without a unit gets the power alone.
     pub fn real(
         title: impl Into<String>,
-        (from, to): (f64, f64),
+        range: (f64, f64),
         write: impl Fn(f64, usize) -> String,
     ) -> Self {
-        let ticks = ticks((from, to), TICKS, f64::MIN_POSITIVE, write);
-        Self { title: title.into(), from, to, ticks }
+        Self::with_ticks(title.into(), range, f64::MIN_POSITIVE, write)
     }
 
     /// An axis of counts: as [`real`](Self::real), with ticks at whole numbers only.
     pub fn counts(
         title: impl Into<String>,
-        (from, to): (f64, f64),
+        range: (f64, f64),
         write: impl Fn(f64, usize) -> String,
     ) -> Self {
-        let ticks = ticks((from, to), TICKS, 1.0, write);
-        Self { title: title.into(), from, to, ticks }
+        Self::with_ticks(title.into(), range, 1.0, write)
     }
 
     /// An axis of probabilities from 0 to 1 with a tick at each 0.2.
     pub fn probability(title: impl Into<String>, write: impl Fn(f64, usize) -> String) -> Self {
-        let ticks = ticks((0.0, 1.0), 5, f64::MIN_POSITIVE, write);
+        let (ticks, _) = ticks((0.0, 1.0), 5, f64::MIN_POSITIVE, write);
         Self { title: title.into(), from: 0.0, to: 1.0, ticks }
+    }
+
+    fn with_ticks(
+        title: String,
+        (from, to): (f64, f64),
+        least: f64,
+        write: impl Fn(f64, usize) -> String,
+    ) -> Self {
+        let (ticks, exponent) = ticks((from, to), TICKS, least, write);
+        Self { title: with_power(title, exponent), from, to, ticks }
+    }
+}
+
+/// The title with a power of ten before its unit, which stands in brackets at its end; a tick and the brackets read
+/// on as one quantity.
+fn with_power(title: String, exponent: i32) -> String {
+    if exponent == 0 {
+        return title;
+    }
+    let raised: String = exponent.to_string().chars().map(superscript).collect();
+    let power = format!("×\u{202f}10{raised}");
+    let Some((name, unit)) = split_unit(&title) else { return format!("{title} ({power})") };
+    // A unit that starts with a figure, such as 10⁹ cells, is multiplied.
+    let joint = if unit.starts_with(|c: char| c.is_numeric()) { "\u{202f}×\u{202f}" } else { " " };
+    format!("{name} ({power}{joint}{unit})")
+}
+
+/// What stands before the brackets at the end of a title, and what they hold; the unit may hold brackets itself.
+fn split_unit(title: &str) -> Option<(&str, &str)> {
+    let inner = title.strip_suffix(')')?;
+    let mut depth = 1;
+    for (at, character) in inner.char_indices().rev() {
+        match character {
+            ')' => depth += 1,
+            '(' => depth -= 1,
+            _ => {}
+        }
+        if depth == 0 {
+            let (name, rest) = inner.split_at_checked(at)?;
+            return Some((name.strip_suffix(' ')?, rest.strip_prefix('(')?));
+        }
+    }
+    None
+}
+
+fn superscript(digit: char) -> char {
+    match digit {
+        '-' => '⁻',
+        '0' => '⁰',
+        '1' => '¹',
+        '2' => '²',
+        '3' => '³',
+        '4' => '⁴',
+        '5' => '⁵',
+        '6' => '⁶',
+        '7' => '⁷',
+        '8' => '⁸',
+        _ => '⁹',
     }
 }
 
@@ -173,33 +236,35 @@ pub struct SizeContour {
 }
 
 /// Round ticks inside a range: steps of 1, 2 or 5 times a power of ten, about `about` of them (four or more), none
-/// closer than `least`.
+/// closer than `least`; and the exponent of the power of ten that their texts leave out, usually 0.
 ///
-/// `write` is given each value and the number of decimals that tell neighbours apart. A range that is empty,
-/// reversed or not finite has no ticks.
-pub fn ticks(
+/// `write` is given each value, without that power, and the number of decimals that tell neighbours apart. A range
+/// that is empty, reversed or not finite has no ticks.
+fn ticks(
     (from, to): (f64, f64),
     about: usize,
     least: f64,
     write: impl Fn(f64, usize) -> String,
-) -> Vec<Tick> {
+) -> (Vec<Tick>, i32) {
     let span = to - from;
     if !(span.is_finite() && span > 0.0) {
-        return Vec::new();
+        return (Vec::new(), 0);
     }
     let step = Step::at_least((span / about.max(1) as f64).max(least));
     // A tick that misses the range by a rounding error belongs to it.
     let slack = 1e-9;
     let first = (from / step.value() - slack).ceil();
     let last = (to / step.value() + slack).floor();
+    let exponent = step.left_out(first.abs().max(last.abs()));
+    let written = step.divided(exponent);
     let mut out = Vec::new();
     let mut count = first;
     while count <= last && out.len() <= 4 * about {
-        let position = step.times(count);
-        out.push(Tick { position, text: write(position, step.decimals()) });
+        let text = write(written.times(count), written.decimals());
+        out.push(Tick { position: step.times(count), text });
         count += 1.0;
     }
-    out
+    (out, exponent)
 }
 
 /// A step of 1, 2 or 5 times a power of ten.
@@ -238,6 +303,29 @@ impl Step {
 
     fn decimals(self) -> usize {
         usize::try_from(-self.exponent).unwrap_or(0)
+    }
+
+    /// This step divided by a power of ten.
+    fn divided(self, exponent: i32) -> Self {
+        Self { exponent: self.exponent - exponent, ..self }
+    }
+
+    /// The exponent of the power of ten to leave out where ticks reach up to `count` steps.
+    fn left_out(self, count: f64) -> i32 {
+        let mut exponent = self.exponent;
+        let mut lead = count * self.digit;
+        if !lead.is_finite() {
+            return 0;
+        }
+        // Division by ten tells whole powers of ten exactly, which a logarithm may miss.
+        while lead >= 10.0 {
+            lead /= 10.0;
+            exponent += 1;
+        }
+        let large = self.times(count) > LARGEST;
+        // A tenth and more would lose but its zero.
+        let small = self.decimals() > DECIMALS && exponent < -1;
+        if large || small { exponent } else { 0 }
     }
 }
 
@@ -285,7 +373,7 @@ mod tests {
     }
 
     fn texts(range: (f64, f64), about: usize, least: f64) -> Vec<String> {
-        ticks(range, about, least, plain).into_iter().map(|tick| tick.text).collect()
+        ticks(range, about, least, plain).0.into_iter().map(|tick| tick.text).collect()
     }
 
     #[test]
@@ -295,14 +383,48 @@ mod tests {
         assert_eq!(texts((2.0, 5.0), 6, 1.0), ["2", "3", "4", "5"]);
         assert_eq!(texts((-0.31, 0.12), 5, 0.0), ["−0.3", "−0.2", "−0.1", "0.0", "0.1"]);
         assert_eq!(
-            texts((0.0, 9_000_000.0), 6, 1.0),
-            ["0", "2000000", "4000000", "6000000", "8000000"]
+            texts((0.000_2, 0.000_6), 4, 0.0),
+            ["0.0002", "0.0003", "0.0004", "0.0005", "0.0006"]
         );
-        assert_eq!(texts((1.1e-7, 2.9e-7), 4, 0.0), ["0.00000015", "0.00000020", "0.00000025"]);
+        assert_eq!(texts((0.900_01, 0.900_03), 2, 0.0), ["0.90001", "0.90002", "0.90003"]);
         assert_eq!(
-            texts((3e12, 5e12), 2, 0.0),
-            ["3000000000000", "4000000000000", "5000000000000"]
+            texts((0.0, 1e6), 5, 1.0),
+            ["0", "200000", "400000", "600000", "800000", "1000000"]
         );
+    }
+
+    #[test]
+    fn long_ticks_leave_out_a_power_of_ten() {
+        let axis = |range| {
+            let axis = Axis::real("mass (g)", range, plain);
+            let texts: Vec<String> = axis.ticks.iter().map(|tick| tick.text.clone()).collect();
+            (texts.join(" "), axis.title)
+        };
+        let (texts, title) = axis((0.86e-9, 3.35e-9));
+        assert_eq!(texts, "1.0 1.5 2.0 2.5 3.0");
+        assert_eq!(title, "mass (×\u{202f}10⁻⁹ g)");
+        assert_eq!(axis((1.1e-7, 2.9e-7)).0, "1.5 2.0 2.5");
+        assert_eq!(axis((-1.7e-9, -0.45e-9)).0, "−1.5 −1.0 −0.5");
+        assert_eq!(axis((0.45e12, 1.7e12)).1, "mass (×\u{202f}10¹² g)");
+        // Whole powers of ten at the end, which a logarithm might put one too low.
+        for exponent in [-300, -23, -15, -9, -5, 7, 9, 15, 22, 23, 300] {
+            let end: f64 = format!("1e{exponent}").parse().unwrap_or(f64::NAN);
+            assert_eq!(axis((0.0, end)).0, "0.0 0.2 0.4 0.6 0.8 1.0", "{end}");
+        }
+        let counts = Axis::counts("units per group", (2.0, 9_000_000.0), plain);
+        assert_eq!(counts.title, "units per group (×\u{202f}10⁶)");
+        assert_eq!(counts.ticks[0], Tick { position: 2e6, text: "2".to_owned() });
+    }
+
+    #[test]
+    fn the_power_of_ten_joins_the_unit() {
+        let title = |title: &str| with_power(title.to_owned(), -12).replace('\u{202f}', " ");
+        assert_eq!(title("flow (g/(m² d))"), "flow (× 10⁻¹² g/(m² d))");
+        assert_eq!(title("flow (of air)s"), "flow (of air)s (× 10⁻¹²)");
+        assert_eq!(title("leucocytes (10⁹/l)"), "leucocytes (× 10⁻¹² × 10⁹/l)");
+        assert_eq!(title("x)"), "x) (× 10⁻¹²)");
+        assert_eq!(title("(g)"), "(g) (× 10⁻¹²)");
+        assert_eq!(with_power("mass (g)".to_owned(), 0), "mass (g)");
     }
 
     #[test]
@@ -310,7 +432,7 @@ mod tests {
         let mut span = 1e-12;
         while span < 1e15 {
             for about in 4..9 {
-                let found = ticks((0.0, span), about, 0.0, plain);
+                let (found, _) = ticks((0.0, span), about, 0.0, plain);
                 assert!(
                     found.len() >= 2 && found.len() <= about + 2,
                     "{span} {about} {}",
@@ -331,7 +453,7 @@ mod tests {
     #[test]
     fn an_empty_reversed_or_endless_range_has_no_ticks() {
         for range in [(1.0, 1.0), (2.0, 1.0), (f64::NAN, 1.0), (0.0, f64::INFINITY)] {
-            assert!(ticks(range, 5, 0.0, plain).is_empty());
+            assert!(ticks(range, 5, 0.0, plain).0.is_empty());
         }
     }
 

@@ -75,31 +75,51 @@ impl Locale {
         self.dressed(&value.to_string(), false)
     }
 
-    /// A probability in percent with one decimal at most, rounded with the caution of [`Self::probability`].
+    /// A stated fraction in percent, as short as it can be: 5 %, 2.5 %.
     pub fn percent(&self, value: f64) -> String {
         let points = value * 100.0;
-        let text = if value >= 1.0 || value <= 0.0 || (0.1..=99.9).contains(&points) {
-            let text = self.fixed(cautious(value, 1000.0) * 100.0, 1);
+        let text = if points == 0.0 || points >= 0.1 {
+            let text = self.fixed(points, 1);
             let whole = text.strip_suffix('0').and_then(|t| t.strip_suffix(self.decimal));
             whole.map_or(text.clone(), str::to_owned)
-        } else if points > 99.9 {
-            format!(">{THIN}99{}9", self.decimal)
         } else {
             self.significant(points, 2)
         };
         format!("{text}{THIN}%")
     }
 
-    /// A probability as a decimal fraction with three decimals, rounded to the nearest, except that rounding up never
-    /// lands on a round target: 0.7996 is written 0.799, so that a missed target never looks met.
+    /// A computed power in percent with one decimal, rounded with the caution of [`Self::probability`].
+    pub fn power(&self, value: f64) -> String {
+        format!("{}{THIN}%", self.cautious(value, 100.0, 1))
+    }
+
+    /// A computed probability as a decimal fraction with three decimals, rounded to the nearest. Where rounding up would
+    /// land on a whole hundredth, as targets are, the number is written as what it is: 0.79996 is `< 0.800`, so that a
+    /// missed target never looks met. Certainty is never claimed.
     pub fn probability(&self, value: f64) -> String {
-        if value > 0.9995 && value < 1.0 {
-            return format!(">{THIN}0{}999", self.decimal);
-        }
         if value < 0.001 && value > 0.0 {
             return self.significant(value, 2);
         }
-        self.fixed(cautious(value, 1000.0), 3)
+        self.cautious(value, 1.0, 3)
+    }
+
+    /// One minus a probability as [`Self::probability`] prints it, so that the two add up on paper.
+    pub fn complement(&self, value: f64) -> String {
+        let printed = (value * 1000.0).round() / 1000.0;
+        if printed >= 1.0 {
+            return format!("<{THIN}0{}001", self.decimal);
+        }
+        self.fixed(1.0 - printed, 3)
+    }
+
+    fn cautious(&self, value: f64, scale: f64, decimals: usize) -> String {
+        let nearest = (value * 1000.0).round();
+        if nearest >= 1000.0 && value < 1.0 {
+            return format!(">{THIN}{}", self.fixed(0.999 * scale, decimals));
+        }
+        let flattering = nearest > value * 1000.0 * (1.0 + 1e-12) && nearest % 10.0 == 0.0;
+        let text = self.fixed(nearest / 1000.0 * scale, decimals);
+        if flattering { format!("<{THIN}{text}") } else { text }
     }
 
     /// A day of the calendar.
@@ -149,13 +169,6 @@ impl Locale {
     }
 }
 
-/// Rounds to the nearest multiple of `1 / parts`, but down where rounding up would reach a whole hundredth.
-fn cautious(value: f64, parts: f64) -> f64 {
-    let nearest = (value * parts).round();
-    let flattering = nearest > value * parts * (1.0 + 1e-12) && nearest % (parts / 100.0) == 0.0;
-    if flattering { (nearest - 1.0) / parts } else { nearest / parts }
-}
-
 /// Decimals that show so many significant digits of a value.
 pub fn decimals_for(value: f64, digits: usize) -> usize {
     let magnitude = libm::log10(value.abs()).floor();
@@ -200,11 +213,13 @@ mod tests {
 
     #[test]
     fn a_missed_target_never_looks_met() {
-        assert_eq!(en().probability(0.799_96), "0.799");
+        assert_eq!(en().probability(0.799_96), "<\u{202f}0.800");
+        assert_eq!(en().probability(0.799_4), "0.799");
         assert_eq!(en().probability(0.8), "0.800");
-        assert_eq!(en().percent(0.999_999), ">\u{202f}99.9\u{202f}%");
-        assert_eq!(en().percent(0.799_96), "79.9\u{202f}%");
+        assert_eq!(en().power(0.999_999), ">\u{202f}99.9\u{202f}%");
+        assert_eq!(en().power(0.799_96), "<\u{202f}80.0\u{202f}%");
+        assert_eq!(en().complement(0.830_35), "0.170");
         assert_eq!(en().percent(0.05), "5\u{202f}%");
-        assert_eq!(en().percent(0.816), "81.6\u{202f}%");
+        assert_eq!(en().power(0.9104), "91.0\u{202f}%");
     }
 }

@@ -44,6 +44,8 @@ pub struct ExperimentView<'a> {
     pub number: usize,
     /// Decimals for computed values in the unit of the outcome.
     pub decimals: usize,
+    /// Decimals for the effects of the table of sizes.
+    pub table_decimals: usize,
     /// Whether all groups have the same size in the analysis.
     pub even: bool,
     /// Whether all groups have the same size at the start.

@@ -3,33 +3,24 @@
 use thiserror::Error;
 
 use crate::numerics::NumericsError;
-use crate::quantities::LARGEST_SIZE;
+use crate::quantities::{Grouped, LARGEST_SIZE};
 
 /// A failure of the solver.
 #[derive(Debug, Clone, PartialEq, Error)]
 pub enum SolverError {
     /// No legal size reaches the wanted power.
     #[error(
-        "the wanted power is not reached with up to {LARGEST_SIZE} units per group; look for a larger difference, a \
-         smaller standard deviation, a lower power or a higher significance level"
+        "the wanted power is not reached with up to {} units per group; look for a larger difference, a \
+         smaller standard deviation, a lower power or a higher significance level",
+        Grouped(LARGEST_SIZE)
     )]
     OutOfReach,
     /// A number of units is too large to count.
     #[error(
-        "the number of units exceeds {LARGEST_SIZE} per group once losses and further units are added"
+        "the number of units exceeds {} per group once losses and further units are added",
+        Grouped(LARGEST_SIZE)
     )]
     TooMany,
-    /// A ceiling that leaves too few units after losses to run the analysis at all.
-    #[error(
-        "the ceiling leaves {remain} units in the smallest group after losses, but the analysis needs at least \
-         {needed}; raise the ceiling"
-    )]
-    CeilingTooLow {
-        /// Units that would remain.
-        remain: u64,
-        /// Units that the analysis needs.
-        needed: u64,
-    },
     /// A numerical routine failed.
     #[error("a numerical routine failed: {0}; please report it together with the spec")]
     Numerics(#[from] NumericsError),

@@ -2,9 +2,9 @@
 
 use super::error::SolverError;
 use super::grid::size_grid;
-use super::sample_size::{smallest_sizes, within_reach};
+use super::sample_size::{smallest_for, smallest_sizes, within_reach};
 use crate::designs::{Point, Problem, Sizes};
-use crate::plan::{Bound, CeilingPlan, ContourLine, Contours, Curves, Firmness};
+use crate::plan::{Bound, Bounds, CeilingPlan, Columns, ContourLine, Contours, Curves, Firmness};
 
 /// Level of the confidence limits that serve as plausible bounds of the spread.
 const LIMITS_LEVEL: f64 = 0.8;
@@ -27,23 +27,54 @@ pub(super) fn firmness(
     ceiling: Option<&CeilingPlan>,
 ) -> Result<Firmness, SolverError> {
     let planned = problem.planned();
-    let limits = problem.spread().limits(LIMITS_LEVEL)?;
+    let table_effects: Vec<_> = TABLE_EFFECTS.iter().map(|f| f * planned.effect).collect();
+    let Some(spread) = problem.spread() else {
+        return without_spread(problem, sizes, ceiling, table_effects);
+    };
+    let limits = spread.limits(LIMITS_LEVEL)?;
     let (low, high) = limits.unwrap_or((
         planned.nuisance * CONVENTIONAL_SPAN.0,
         planned.nuisance * CONVENTIONAL_SPAN.1,
     ));
-    let bounds = (low, high);
-    let table_spreads = vec![low, planned.nuisance, high];
-    let table_effects: Vec<_> = TABLE_EFFECTS.iter().map(|f| f * planned.effect).collect();
+    let spreads = vec![low, planned.nuisance, high];
     Ok(Firmness {
-        low: bound(problem, sizes, low)?,
-        high: bound(problem, sizes, high)?,
-        limits_level: limits.map(|_| LIMITS_LEVEL),
-        table: size_grid(problem, &table_effects, &table_spreads)?,
+        bounds: Some(Bounds {
+            low: bound(problem, sizes, low)?,
+            high: bound(problem, sizes, high)?,
+            limits_level: limits.map(|_| LIMITS_LEVEL),
+        }),
+        table: size_grid(problem, &table_effects, &spreads)?,
         table_effects,
-        table_spreads,
-        curves: curves(problem, sizes, bounds, ceiling)?,
-        contours: contours(problem, sizes, bounds, ceiling)?,
+        curves: curves(problem, sizes, &[planned.nuisance, low, high], ceiling)?,
+        contours: Some(contours(problem, sizes, (low, high), ceiling)?),
+        table_columns: Columns::Spreads(spreads),
+    })
+}
+
+/// Where nothing but the effect is assumed, the table looks at powers to aim for.
+fn without_spread(
+    problem: &dyn Problem,
+    sizes: &Sizes,
+    ceiling: Option<&CeilingPlan>,
+    table_effects: Vec<f64>,
+) -> Result<Firmness, SolverError> {
+    let mut powers = vec![0.8, 0.9, 0.95, problem.risk().power.get()];
+    powers.sort_by(f64::total_cmp);
+    powers.dedup();
+    let cell = |effect: f64, power: f64| {
+        let at = Point { effect, ..problem.planned() };
+        let found = within_reach(smallest_for(problem, at, power))?;
+        Ok(found.map(|found| found.sizes.step))
+    };
+    let row = |effect: &f64| powers.iter().map(|power| cell(*effect, *power)).collect();
+    let table = table_effects.iter().map(row).collect::<Result<Vec<_>, SolverError>>()?;
+    Ok(Firmness {
+        bounds: None,
+        table,
+        table_effects,
+        curves: curves(problem, sizes, &[problem.planned().nuisance], ceiling)?,
+        contours: None,
+        table_columns: Columns::Powers(powers),
     })
 }
 
@@ -57,7 +88,7 @@ fn bound(problem: &dyn Problem, sizes: &Sizes, spread: f64) -> Result<Bound, Sol
 fn curves(
     problem: &dyn Problem,
     sizes: &Sizes,
-    (low, high): (f64, f64),
+    spreads: &[f64],
     ceiling: Option<&CeilingPlan>,
 ) -> Result<Curves, SolverError> {
     let first = problem.smallest_step();
@@ -70,7 +101,6 @@ fn curves(
     steps.sort_unstable();
     steps.dedup();
     steps.retain(|step| problem.sizes(*step).is_some());
-    let spreads = [problem.planned().nuisance, low, high];
     let mut powers: [Vec<f64>; 3] = Default::default();
     for sizes in steps.iter().filter_map(|step| problem.sizes(*step)) {
         let fixed = problem.at_sizes(&sizes)?;
@@ -98,8 +128,9 @@ fn contours(
     let mut steps: Vec<(u64, bool)> = ladder(problem.smallest_step(), sizes.step);
     if let Some(ceiling) = ceiling {
         let step = ceiling.remain.step;
-        steps.retain(|(other, _)| *other != step);
-        steps.push((step, true));
+        let shown = ceiling.outlook.is_some();
+        steps.retain(|(other, _)| !shown || *other != step);
+        steps.extend(shown.then_some((step, true)));
     }
     steps.sort_unstable();
     let mut lines = Vec::new();

@@ -76,7 +76,7 @@ fn solve_experiment(
         groups: problem.groups().to_vec(),
         risk: problem.risk(),
         effect: problem.effect().clone(),
-        spread: problem.spread().clone(),
+        spread: problem.spread().cloned(),
         planned: problem.planned(),
         analysis: problem.facts(&exact.sizes).map_err(|e| within(e.into()))?,
         textbook: problem.textbook(problem.planned()).map_err(|e| within(e.into()))?,

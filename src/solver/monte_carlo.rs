@@ -9,7 +9,7 @@ use sha2::{Digest, Sha256};
 use super::error::SolverError;
 use crate::designs::{Problem, Trial};
 use crate::numerics::random::Stream;
-use crate::plan::{Check, Estimate, Exact};
+use crate::plan::{Check, CheckOutcome, Estimate, Exact};
 
 /// Studies simulated from one stream.
 const CHUNK: u64 = 500;
@@ -65,17 +65,20 @@ impl Tally {
     }
 }
 
-/// Runs the check; `None` when it is switched off or a single study is too large.
+/// Runs the check, or says why there is none.
 pub(super) fn check(
     problem: &dyn Problem,
     exact: &Exact,
     replicates: u64,
     seed: [u8; 32],
     progress: &dyn Progress,
-) -> Result<Option<Check>, SolverError> {
+) -> Result<CheckOutcome, SolverError> {
+    if replicates == 0 {
+        return Ok(CheckOutcome::SwitchedOff);
+    }
     let replicates = replicates.min(BUDGET / exact.sizes.total.max(1));
     if replicates < FEWEST {
-        return Ok(None);
+        return Ok(CheckOutcome::TooLarge);
     }
     let trial = problem.trial(&exact.sizes, problem.planned())?;
     progress.begin(replicates);
@@ -90,7 +93,7 @@ pub(super) fn check(
     let expected_error = (exact.power * (1.0 - exact.power) / replicates as f64).sqrt();
     let distance =
         if expected_error > 0.0 { (power.value - exact.power) / expected_error } else { 0.0 };
-    Ok(Some(Check {
+    Ok(CheckOutcome::Run(Check {
         replicates,
         seed: seed.iter().map(|byte| format!("{byte:02x}")).collect(),
         power,

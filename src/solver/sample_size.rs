@@ -18,16 +18,24 @@ pub struct Found {
 
 /// The smallest step whose power reaches the target of the problem, at a point.
 ///
-/// The size of every other group follows from the step by rounding up, so "smallest" means: with one unit fewer in
-/// the smallest group, and the others rounded up accordingly, the target is missed.
+/// The size of every other group follows from the step, that of the largest group, by rounding up. "Smallest" means:
+/// with one unit fewer in the largest group, and the others rounded up accordingly, the target is missed.
 ///
 /// # Errors
 ///
 /// [`SolverError::OutOfReach`] when the largest size does not suffice.
 pub fn smallest_sizes(problem: &dyn Problem, at: Point) -> Result<Found, SolverError> {
+    smallest_for(problem, at, problem.risk().power.get())
+}
+
+/// The same for another power to aim for.
+pub(super) fn smallest_for(
+    problem: &dyn Problem,
+    at: Point,
+    target: f64,
+) -> Result<Found, SolverError> {
     let Some(textbook) = problem.textbook(at)? else { return Err(SolverError::OutOfReach) };
     let hint = Some(textbook.step as u64 + 1);
-    let target = problem.risk().power.get();
     let largest = largest_step(problem);
     let power = |step: u64| match problem.sizes(step) {
         Some(sizes) => problem.power(&sizes, at),

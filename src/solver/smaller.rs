@@ -1,8 +1,8 @@
 //! If fewer units are to be had: the ceiling, and a ladder of smaller studies.
 
 use super::error::SolverError;
-use crate::designs::{Problem, Sizes};
-use crate::plan::{CeilingPlan, Smaller};
+use crate::designs::{Point, Problem, Sizes};
+use crate::plan::{CeilingPlan, Outlook, Smaller};
 use crate::study::{CeilingLimit, Experiment};
 
 /// What the ceiling allows; `None` when there is none.
@@ -12,10 +12,13 @@ pub(super) fn ceiling(
 ) -> Result<Option<CeilingPlan>, SolverError> {
     let Some(ceiling) = &experiment.ceiling else { return Ok(None) };
     let problem = experiment.problem.as_ref();
-    let start = start_under(problem, ceiling.limit)
-        .ok_or(SolverError::CeilingTooLow { remain: 0, needed: problem.smallest_step() })?;
+    let start = start_under(problem, ceiling.limit);
     let remain = remaining(experiment, &start)?;
-    let (at, target) = (problem.planned(), problem.risk().power.get());
+    let smallest_step = problem.smallest_step();
+    let outlook = match remain.step >= smallest_step && problem.is_possible(&remain) {
+        true => Some(outlook(problem, &start, &remain)?),
+        false => None,
+    };
     let asked = needed
         .per_group
         .iter()
@@ -25,21 +28,25 @@ pub(super) fn ceiling(
         CeilingLimit::PerGroup(limit) => asked.iter().all(|n| *n <= limit),
         CeilingLimit::Total(limit) => asked.iter().sum::<u64>() <= limit,
     };
-    Ok(Some(CeilingPlan {
-        power: problem.power(&remain, at)?,
-        power_without_losses: problem.power(&start, at)?,
-        detectable: problem.detectable(&remain, at.nuisance, target)?,
-        textbook_detectable: problem.textbook_detectable(&remain, at.nuisance)?,
-        textbook_power: problem.textbook_power(&remain, at)?,
-        ceiling: ceiling.clone(),
-        start,
-        remain,
-        fits,
-    }))
+    Ok(Some(CeilingPlan { ceiling: ceiling.clone(), start, remain, fits, outlook, smallest_step }))
+}
+
+fn outlook(problem: &dyn Problem, start: &Sizes, remain: &Sizes) -> Result<Outlook, SolverError> {
+    let (at, target) = (problem.planned(), problem.risk().power.get());
+    let other = problem.effect().other.as_ref().map(|(_, other)| other.value.abs());
+    let other = other.map(|effect| problem.power(remain, Point { effect, ..at })).transpose()?;
+    Ok(Outlook {
+        power: problem.power(remain, at)?,
+        power_without_losses: problem.power(start, at)?,
+        detectable: problem.detectable(remain, at.nuisance, target)?,
+        textbook_detectable: problem.textbook_detectable(remain, at.nuisance)?,
+        textbook_power: problem.textbook_power(remain, at)?,
+        other_power: other,
+    })
 }
 
 /// The largest sizes in the wanted allocation that stay under the limit.
-fn start_under(problem: &dyn Problem, limit: CeilingLimit) -> Option<Sizes> {
+fn start_under(problem: &dyn Problem, limit: CeilingLimit) -> Sizes {
     let under = |sizes: &Sizes| match limit {
         CeilingLimit::PerGroup(most) => sizes.per_group.iter().all(|n| *n <= most),
         CeilingLimit::Total(most) => sizes.total <= most,
@@ -56,7 +63,11 @@ fn start_under(problem: &dyn Problem, limit: CeilingLimit) -> Option<Sizes> {
             high = middle;
         }
     }
-    if low == 0 { None } else { problem.sizes(low) }
+    let none = || {
+        let per_group = vec![0; problem.groups().len()];
+        Sizes { step: 0, per_group, total: 0 }
+    };
+    problem.sizes(low).filter(|_| low > 0).unwrap_or_else(none)
 }
 
 fn remaining(experiment: &Experiment, start: &Sizes) -> Result<Sizes, SolverError> {
@@ -65,13 +76,9 @@ fn remaining(experiment: &Experiment, start: &Sizes) -> Result<Sizes, SolverErro
         .iter()
         .map(|n| experiment.losses.remain(*n).ok_or(SolverError::TooMany))
         .collect::<Result<Vec<_>, _>>()?;
-    let smallest = per_group.iter().copied().min().unwrap_or(0);
-    let needed = experiment.problem.smallest_step();
-    if smallest < needed {
-        return Err(SolverError::CeilingTooLow { remain: smallest, needed });
-    }
     let total = per_group.iter().sum();
-    Ok(Sizes { step: smallest, per_group, total })
+    let step = per_group.iter().copied().max().unwrap_or(0);
+    Ok(Sizes { step, per_group, total })
 }
 
 /// Studies of about one, two, three and four fifths of the size, and of the size itself.

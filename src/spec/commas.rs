@@ -1,4 +1,5 @@
-//! Decimal commas inside a list in brackets: `[2,9, 3,8]` is legal YAML and means four numbers, not two.
+//! Decimal commas inside brackets and braces, where YAML reads them as separators: `[2,9, 3,8]` means four numbers,
+//! not two, and `{difference: 8,5}` holds a key `5`.
 
 use super::finding::Finding;
 use super::locate::{self, Locator};
@@ -7,6 +8,15 @@ use crate::designs::{Aspect, Fault, Path};
 
 /// Most lists that are looked at; finding each takes a reading of the file.
 const MOST_LISTS: usize = 10;
+
+/// The key before an entry and the number that was probably meant, when the entry is nothing but the decimals that a
+/// decimal comma cut off.
+pub(super) fn cut_number(entries: &[(String, Node)], position: usize) -> Option<(&str, String)> {
+    let (decimals, Node::Null) = entries.get(position)? else { return None };
+    let (before, Node::Whole(whole)) = entries.get(position.checked_sub(1)?)? else { return None };
+    let digits = !decimals.is_empty() && decimals.chars().all(|c| c.is_ascii_digit());
+    digits.then(|| (before.as_str(), format!("{whole}.{decimals}")))
+}
 
 /// The lists of whole numbers in which commas with and without a space alternate as decimal commas would.
 pub(super) fn decimal_commas(root: &Node, locator: &Locator<'_>) -> Vec<Finding> {
@@ -58,7 +68,21 @@ fn has_decimal_commas(written: &str) -> bool {
 
 #[cfg(test)]
 mod tests {
-    use super::has_decimal_commas;
+    use super::*;
+
+    #[test]
+    fn only_digits_without_a_value_after_a_whole_number_are_decimals() {
+        let cut = |text: &str| {
+            let node = Node::parse(text).unwrap_or(Node::Null);
+            cut_number(node.entries(), 1).map(|(key, number)| (key.to_owned(), number))
+        };
+        let found = |key: &str, number: &str| Some((key.to_owned(), number.to_owned()));
+        assert_eq!(cut("{difference: 8,5}"), found("difference", "8.5"));
+        assert_eq!(cut("{sd: -12,05, n: 3}"), found("sd", "-12.05"));
+        for other in ["{a: 8, 5: 6}", "{a: b, 5}", "{a: 8, x}", "{a: 8.5, 5}", "{a: 8}"] {
+            assert_eq!(cut(other), None, "{other}");
+        }
+    }
 
     #[test]
     fn only_mixed_commas_are_suspect() {

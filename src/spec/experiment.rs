@@ -4,7 +4,7 @@ use super::choose::Choice;
 use super::finding::{Finding, RestsOn};
 use super::raw::{CeilingKeys, CommonExperiment, CountOf, LossesKeys};
 use crate::designs::{Fault, Path, Problem, Tables};
-use crate::quantities::{Losses, OutOfRange};
+use crate::quantities::{Losses, OutOfRange, Written};
 use crate::study::{Ceiling, CeilingLimit, Experiment, FurtherUnits};
 
 /// Reads an experiment; `Ok(None)` when its design is not known, which is reported elsewhere.
@@ -52,7 +52,7 @@ pub(super) fn read(
 fn losses(keys: Option<&LossesKeys>) -> Result<Losses, Fault> {
     let refuse = |at: &'static str| {
         move |out: OutOfRange| {
-            Fault::value(Path::of(at), format!("{} is {}", out.range.name, out.given))
+            Fault::value(Path::of(at), format!("{} is {}", out.range.name, Written(out.given)))
                 .help(format!("it {}", out.range.advice))
         }
     };

@@ -26,7 +26,7 @@ impl InputFile {
     ///
     /// The stream fails, or holds more than [`LARGEST_SPEC`] bytes (no more than that is read).
     pub fn from_reader(name: &str, reader: impl Read) -> Result<Self, FolderError> {
-        let bytes = read_at_most(name, reader, LARGEST_SPEC)?;
+        let bytes = read_at_most("it", reader, LARGEST_SPEC)?;
         Ok(Self { name: name.to_owned(), bytes })
     }
 
@@ -37,12 +37,11 @@ impl InputFile {
     /// There is no such file, it is no regular file, it cannot be read, or it exceeds [`LARGEST_SPEC`] bytes (its
     /// size is known before it is read).
     pub fn open_spec(path: &Path) -> Result<(Self, DiskFolder), FolderError> {
-        let shown = path.display().to_string();
         let name = path
             .file_name()
             .map(|name| name.to_string_lossy().into_owned())
-            .ok_or_else(|| FolderError::new(format!("`{shown}` names no file")))?;
-        let bytes = read_regular(&shown, path, LARGEST_SPEC)?;
+            .ok_or_else(|| FolderError::new("it names no file"))?;
+        let bytes = read_regular("it", path, LARGEST_SPEC)?;
         let parent = match path.parent() {
             Some(parent) if !parent.as_os_str().is_empty() => parent,
             _ => Path::new("."),
@@ -135,7 +134,7 @@ impl Folder for DiskFolder {
             ))
             .help("copy the file into the folder of the spec"));
         }
-        read_regular(&name, &real, LARGEST_FILE)
+        read_regular(&format!("`{name}`"), &real, LARGEST_FILE)
     }
 }
 
@@ -150,7 +149,7 @@ impl Folder for MemoryFolder {
             FolderError::new(format!("there is no file `{name}` beside the spec"))
         })?;
         if bytes.len() as u64 > LARGEST_FILE {
-            return Err(too_large(&name, LARGEST_FILE));
+            return Err(too_large(&format!("`{name}`"), LARGEST_FILE));
         }
         Ok(bytes.clone())
     }
@@ -191,13 +190,14 @@ pub(super) fn relative_name(name: &str) -> Result<String, FolderError> {
     Ok(steps.join("/"))
 }
 
-fn read_regular(name: &str, path: &Path, limit: u64) -> Result<Vec<u8>, FolderError> {
+/// Reads a file that messages call `called`: a spec is `it`, since its path stands before the message.
+fn read_regular(called: &str, path: &Path, limit: u64) -> Result<Vec<u8>, FolderError> {
     let failed = |error: std::io::Error| match error.kind() {
-        std::io::ErrorKind::NotFound => FolderError::new(format!("there is no file `{name}`")),
-        _ => FolderError::new(format!("`{name}` cannot be read: {}", plain(&error))),
+        std::io::ErrorKind::NotFound => FolderError::new("there is no such file"),
+        _ => FolderError::new(format!("{called} cannot be read: {}", plain(&error))),
     };
     let no_file =
-        || FolderError::new(format!("`{name}` is a folder, a pipe or a device, not a file"));
+        || FolderError::new(format!("{called} is a folder, a pipe or a device, not a file"));
     // Asked before opening, because to open a pipe is to wait for its other end.
     if !std::fs::metadata(path).map_err(failed)?.is_file() {
         return Err(no_file());
@@ -208,25 +208,25 @@ fn read_regular(name: &str, path: &Path, limit: u64) -> Result<Vec<u8>, FolderEr
         return Err(no_file());
     }
     if facts.len() > limit {
-        return Err(too_large(name, limit));
+        return Err(too_large(called, limit));
     }
-    read_at_most(name, file, limit)
+    read_at_most(called, file, limit)
 }
 
-fn read_at_most(name: &str, reader: impl Read, limit: u64) -> Result<Vec<u8>, FolderError> {
+fn read_at_most(called: &str, reader: impl Read, limit: u64) -> Result<Vec<u8>, FolderError> {
     let mut bytes = Vec::new();
     reader
         .take(limit + 1)
         .read_to_end(&mut bytes)
-        .map_err(|error| FolderError::new(format!("`{name}` cannot be read: {}", plain(&error))))?;
+        .map_err(|error| FolderError::new(format!("{called} cannot be read: {}", plain(&error))))?;
     if bytes.len() as u64 > limit {
-        return Err(too_large(name, limit));
+        return Err(too_large(called, limit));
     }
     Ok(bytes)
 }
 
-fn too_large(name: &str, limit: u64) -> FolderError {
-    FolderError::new(format!("`{name}` is larger than {} MiB", limit >> 20)).help(
+fn too_large(called: &str, limit: u64) -> FolderError {
+    FolderError::new(format!("{called} is larger than {} MiB", limit >> 20)).help(
         if limit == LARGEST_SPEC {
             "a spec takes a few kilobytes; put measurements into a CSV file beside it"
         } else {

@@ -1,5 +1,7 @@
 //! What was probably meant by text that should have been a number.
 
+use crate::quantities::Written;
+
 /// The way out when text stands where a number is needed.
 pub(super) fn for_number(text: &str) -> String {
     let text = text.trim();
@@ -7,6 +9,8 @@ pub(super) fn for_number(text: &str) -> String {
         text.chars().map(|c| if matches!(c, '\u{2212}' | '\u{2013}') { '-' } else { c }).collect();
     minus(text, &plain)
         .or_else(|| percent(&plain))
+        .or_else(|| other_base(&plain).map(|(_, value)| decimal(&value)))
+        .or_else(|| zeros_in_front(&plain))
         .or_else(|| quoted(&plain))
         .or_else(|| separated(&plain))
         .or_else(|| fraction(&plain))
@@ -44,7 +48,7 @@ fn hundredth(number: &str) -> String {
         None => ("", number.trim_start_matches('+')),
     };
     if digits.contains(['e', 'E']) {
-        return finite(number).map_or_else(String::new, |value| format!("{}", value / 100.0));
+        return finite(number).map_or_else(String::new, |value| Written(value / 100.0).to_string());
     }
     let (whole, part) = digits.split_once('.').unwrap_or((digits, ""));
     let padded = format!("{whole:0>3}");
@@ -54,6 +58,38 @@ fn hundredth(number: &str) -> String {
     let tail = tail.trim_end_matches('0');
     let kept = if kept.is_empty() { "0" } else { kept };
     if tail.is_empty() { format!("{sign}{kept}") } else { format!("{sign}{kept}.{tail}") }
+}
+
+/// The way out for a number that is not written with decimal digits.
+pub(super) fn decimal(value: &str) -> String {
+    format!("write it with decimal digits: {value}")
+}
+
+/// The notation of a number that is not written with decimal digits, and its value in them.
+pub(super) fn other_base(text: &str) -> Option<(&'static str, String)> {
+    let (sign, body) = match text.strip_prefix('-') {
+        Some(body) => ("-", body),
+        None => ("", text.trim_start_matches('+')),
+    };
+    let (prefix, digits) = body.split_at_checked(2)?;
+    let (name, base) = match prefix {
+        "0x" | "0X" => ("hexadecimal", 16),
+        "0o" | "0O" => ("octal", 8),
+        "0b" | "0B" => ("binary", 2),
+        _ => return None,
+    };
+    let value = u128::from_str_radix(digits, base).ok()?;
+    Some((name, format!("{sign}{value}")))
+}
+
+fn zeros_in_front(text: &str) -> Option<String> {
+    let (sign, digits) = match text.strip_prefix('-') {
+        Some(digits) => ("-", digits),
+        None => ("", text),
+    };
+    let value = digits.trim_start_matches('0');
+    let whole = digits.chars().all(|c| c.is_ascii_digit()) && digits.starts_with('0');
+    (whole && !value.is_empty()).then(|| format!("write it without zeros in front: {sign}{value}"))
 }
 
 fn quoted(text: &str) -> Option<String> {
@@ -94,7 +130,11 @@ fn separated(text: &str) -> Option<String> {
 fn fraction(text: &str) -> Option<String> {
     let (top, bottom) = text.split_once('/')?;
     let value = finite(top.trim())? / finite(bottom.trim())?;
-    value.is_finite().then(|| format!("write the quotient as a decimal number, about {value:.4}"))
+    let shown = match value.abs() {
+        size if (0.001..1e9).contains(&size) => format!("{value:.4}"),
+        _ => Written(value).to_string(),
+    };
+    value.is_finite().then(|| format!("write the quotient as a decimal number, about {shown}"))
 }
 
 fn with_unit(text: &str) -> Option<String> {
@@ -130,6 +170,11 @@ mod tests {
             ("0.8", "write it without quotes: 0.8"),
             ("\u{2212}0.8", "write the minus sign as a hyphen: -0.8"),
             ("1/4", "write the quotient as a decimal number, about 0.2500"),
+            ("1/1e300", "write the quotient as a decimal number, about 1e-300"),
+            ("1e-300 %", "write it as a fraction, not in percent: 1e-302"),
+            ("0X1F", "write it with decimal digits: 31"),
+            ("010", "write it without zeros in front: 10"),
+            ("0", "write it without quotes: 0"),
             (
                 "0.4 mm",
                 "write the number alone: 0.4; a unit of measurement belongs under `outcome.unit`",

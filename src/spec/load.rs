@@ -11,6 +11,7 @@ use super::keys::Homes;
 use super::language::Language;
 use super::locate::{self, Locator, Place};
 use super::node::Node;
+use super::notation;
 use super::problems::{Located, MOST_SHOWN, Mark, Note, SpecProblems, most_shown};
 use super::repair;
 use super::source_files::SourceFiles;
@@ -43,7 +44,12 @@ pub struct Loaded {
 pub fn load(spec: InputFile, folder: &dyn Folder) -> Result<Loaded, SpecProblems> {
     let text = decode(&spec)?;
     let root = tree(&spec.name, &text)?;
-    let (structure, choices) = structure(&root);
+    let (mut structure, choices) = structure(&root);
+    for fault in notation::foreign(&text, &root) {
+        if !structure.spoiled.contains(&fault.at) {
+            structure.add(fault);
+        }
+    }
     if structure.is_full() {
         return Err(problems(&spec.name, text, &root, structure.findings, false));
     }

@@ -20,6 +20,7 @@ mod load;
 mod locate;
 mod nearest;
 mod node;
+mod notation;
 mod problems;
 mod raw;
 mod repair;
@@ -38,3 +39,4 @@ pub use files::{
 pub use language::json_schema;
 pub use load::{Loaded, load};
 pub use problems::{Located, Mark, Note, SpecProblems};
+pub(crate) use text::printable;

@@ -2,6 +2,7 @@
 
 use std::collections::BTreeSet;
 
+use super::commas;
 use super::finding::Finding;
 use super::keys::{self, Homes};
 use super::language::longest;
@@ -11,6 +12,7 @@ use super::shape::{Keys, Shape};
 use super::text;
 use super::words;
 use crate::designs::{Aspect, Fault, Path, Step};
+use crate::quantities::Written;
 
 /// Most findings that are kept; a file with more is not read on.
 pub(super) const MOST_FINDINGS: usize = 500;
@@ -64,6 +66,12 @@ impl Structure {
             let path = at.key(name);
             let before = node.entries().iter().take(position);
             let repetition = before.filter(|(other, _)| other == name).count();
+            if keys.get(name).is_none()
+                && let Some((before, number)) = commas::cut_number(node.entries(), position)
+            {
+                self.cut(&at.key(before), &number, path, repetition);
+                continue;
+            }
             if repetition > 0 {
                 self.repeated(path, repetition);
                 continue;
@@ -96,6 +104,21 @@ impl Structure {
         if let Some(help) = finding.and_then(|finding| finding.fault.help.as_mut()) {
             help.push_str(", or drop the key");
         }
+    }
+
+    /// A decimal comma inside braces, which ends the number before it and makes its decimals a key.
+    fn cut(&mut self, before: &Path, number: &str, decimals: Path, repetition: usize) {
+        let shown = words::subject(&decimals);
+        let reason =
+            format!("the comma before {shown} ends the number, so {shown} is read as a key");
+        let help = format!(
+            "if a decimal comma is meant, write a point: `{}: {number}`",
+            words::last_key(before)
+        );
+        self.spoiled.insert(before.clone());
+        self.spoiled.insert(decimals.clone());
+        let fault = Fault::key(decimals, reason).help(help);
+        self.findings.push(Finding::from(fault).repeated(repetition));
     }
 
     fn repeated(&mut self, path: Path, repetition: usize) {
@@ -207,9 +230,11 @@ impl Structure {
             Fault::value(at.clone(), reason).help("this program reads version 1")
         } else {
             let help = match (low, high) {
-                (Some(low), Some(high)) => format!("it must lie between {low} and {high}"),
-                (Some(low), None) => format!("it must be at least {low}"),
-                (None, high) => format!("it must be at most {}", high.unwrap_or(f64::MAX)),
+                (Some(low), Some(high)) => {
+                    format!("it must lie between {} and {}", Written(low), Written(high))
+                }
+                (Some(low), None) => format!("it must be at least {}", Written(low)),
+                (None, high) => format!("it must be at most {}", Written(high.unwrap_or(f64::MAX))),
             };
             Fault::value(at.clone(), format!("{subject} is {shown}")).help(help)
         };

@@ -138,7 +138,7 @@ pub(super) fn refusal(c: char) -> String {
 }
 
 /// Text that is safe to print on a terminal, on one line, cut to a number of characters.
-pub(super) fn printable(text: &str, most: usize) -> String {
+pub(crate) fn printable(text: &str, most: usize) -> String {
     let mut shown: String = text.chars().map(visible).take(most).collect();
     if text.chars().nth(most).is_some() {
         shown.pop();

@@ -84,7 +84,7 @@ fn two_means_are_a_t_test() {
 fn the_battery_holds_over_the_domain() {
     let points = [1e-300, 1e-12, 0.01, 0.3, 1.0, 2.0, 3.5, 6.0, 12.0, 50.0, 1e4, 1e300];
     for (k, df) in
-        [(2, 0.5), (3, 1.0), (3, 1e12), (7, 4.5), (50, 30.0), (1000, 2.0), (10_000, f64::INFINITY)]
+        [(2, 0.5), (3, 1.0), (3, 1e12), (7, 4.5), (50, 30.0), (1000, 2.0), (1000, f64::INFINITY)]
     {
         let unit = range(k, df);
         let unit = Unit {
@@ -101,7 +101,7 @@ fn the_battery_holds_over_the_domain() {
 
 #[test]
 fn impossible_arguments_are_typed_errors() {
-    for (k, df) in [(1, 5.0), (10_001, 5.0), (3, 0.0), (3, f64::NAN), (3, -1.0)] {
+    for (k, df) in [(1, 5.0), (1001, 5.0), (3, 0.0), (3, f64::NAN), (3, -1.0)] {
         let refused = StudentizedRange::new(k, df);
         assert!(matches!(refused, Err(NumericsError::OutOfDomain { .. })), "{k} {df}");
     }

@@ -132,7 +132,7 @@ proptest! {
         let factor = libm::exp(scale);
         let f = |x: f64| {
             let gap = 0.5 * x - 0.5 * at;
-            gap.signum() * factor * libm::pow(gap.abs(), f64::from(power)).max(f64::MIN_POSITIVE)
+            gap.signum() * (factor * libm::pow(gap.abs(), f64::from(power))).max(f64::MIN_POSITIVE)
                 * if gap == 0.0 { 0.0 } else { 1.0 }
         };
         let root = find_root("power", low, high, |x| Ok(f(x)));

@@ -78,9 +78,46 @@ fn standard_input_and_output_serve() {
         if format == "md" || format == "pdf" {
             let path = place.path().join(format!("from-stdout.{format}"));
             std::fs::write(&path, &output.stdout).expect("written");
-            succeed(sufficit().arg("verify").arg(&path));
+            let said = succeed(sufficit().arg("verify").arg(&path));
+            assert!(!said.contains("figures"), "they are inside: {said}");
         }
     }
+}
+
+#[test]
+fn two_documents_in_one_place_are_refused_before_anything_is_written() {
+    let place = folder();
+    let spec = write(place.path(), "s.yaml", &small_spec());
+    for (outputs, word) in [
+        (&["-o", "q.md", "-o", "q.md"][..], "named twice"),
+        (&["-o", "q.md", "-o", "./q.md"], "the same file"),
+        (&["-o", "-", "-o", "-"], "one document"),
+        (&["-o", "q.md", "-o", "q.markdown"], "`q-figures`"),
+        (&["-o", "q.txt", "--format", "txt"], "`-o -`"),
+        (&["--format", "md"], "`-o -`"),
+        (&["-o", "q.pdf", "--figures", "png"], "`--figures`"),
+    ] {
+        let mut command = sufficit();
+        command.arg("report").arg(&spec).args(outputs).current_dir(place.path());
+        let output = run(&mut command);
+        assert_eq!(output.status.code(), Some(2), "{outputs:?}");
+        assert!(output.stdout.is_empty(), "{outputs:?}");
+        let said = text(&output.stderr);
+        assert!(said.contains(word), "{outputs:?}: {said}");
+        assert_eq!(std::fs::read_dir(place.path()).expect("readable").count(), 1, "{outputs:?}");
+    }
+}
+
+#[test]
+fn a_folder_is_never_replaced() {
+    let place = folder();
+    let spec = write(place.path(), "s.yaml", &small_spec());
+    std::fs::create_dir(place.path().join("r.md")).expect("made");
+    let mut command = sufficit();
+    command.arg("report").arg(&spec).args(["-o", "r.txt", "-o", "r.md", "--replace"]);
+    let said = fail(command.current_dir(place.path()), 5);
+    assert!(said.contains("r.md: a folder of this name exists"), "{said}");
+    assert!(!place.path().join("r.txt").exists());
 }
 
 #[test]
@@ -115,7 +152,7 @@ fn losses_divide_and_further_units_count() {
     let plan = succeed(sufficit().arg("solve").arg(&spec).arg("--json"));
     let plan: serde_json::Value = serde_json::from_str(&plan).expect("JSON");
     let request = &plan["experiments"][0]["request"];
-    // 11 / 0.9 = 12.2, rounded up; 11 * 1.1 = 12.1 would give the same, so 9 / 0.9 = 10 is tested with the decimals.
+    // 11 / 0.9 = 12.2, rounded up.
     assert_eq!(request["per_group"], serde_json::json!([13, 13]));
     assert_eq!(request["units"], 29);
 }
@@ -132,6 +169,8 @@ fn every_command_shows_an_example_in_its_help() {
 fn wrong_command_lines_and_missing_files_have_their_exit_codes() {
     let place = folder();
     fail(sufficit().arg("nonsense"), 2);
+    let said = fail(sufficit().args(["check", "nofile.yaml"]).current_dir(place.path()), 5);
+    assert_eq!(said, "error: nofile.yaml: there is no such file\n");
     fail(sufficit().args(["report", "no-such-file.yaml"]).current_dir(place.path()), 5);
     let spec = write(place.path(), "s.yaml", &small_spec());
     fail(sufficit().arg("report").arg(&spec).args(["-o", "r.odt"]), 2);

@@ -4,8 +4,9 @@ Needs only mpmath.  Run `python3 tests/reference/generate.py` in the project's r
 
     central_tails.tsv  noncentral_tails.tsv  densities.tsv
 
-Every row holds a function name of examples/tabulate.rs, its arguments, the value, the relative tolerance that the tests
-allow, and the oracle.  A row is added by adding its arguments to one of the `*_cases` functions below.
+Every row holds a function name of examples/tabulate.rs, its arguments and the value; the oracle stands in the head of
+the table, the tolerance in tests/numerics/tables.rs.  A row is added by adding its arguments to one of the `*_cases`
+functions below.
 
 None of the oracles shares a method with the program under test: tails are integrals of the density over panels
 (Gauss-Legendre on 40 nodes, in the logarithm of the variable), noncentral tails are mixtures summed term by term with

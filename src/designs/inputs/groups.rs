@@ -70,22 +70,32 @@ pub struct Parallel {
 impl Parallel {
     /// Whether all groups have the same weight.
     pub fn is_balanced(&self) -> bool {
-        self.groups.iter().all(|g| g.weight == self.smallest_weight())
+        self.groups.iter().all(|g| g.weight == self.largest_weight())
     }
 
-    /// The smallest weight.
-    pub fn smallest_weight(&self) -> f64 {
-        self.groups.iter().map(|g| g.weight).fold(f64::INFINITY, f64::min)
+    /// The largest weight.
+    pub fn largest_weight(&self) -> f64 {
+        self.groups.iter().map(|g| g.weight).fold(0.0, f64::max)
     }
 
-    /// Sizes when the group with the smallest weight has `step` units: each `ceil(step * weight / smallest weight)`
-    /// in exact decimal arithmetic. `None` beyond [`LARGEST_SIZE`].
+    /// The smallest step at which every group has at least two units.
+    pub fn smallest_step(&self) -> u64 {
+        let smallest = self.groups.iter().map(|g| g.weight).fold(f64::INFINITY, f64::min);
+        let about = (self.largest_weight() / smallest) as u64;
+        let enough = |step: &u64| {
+            self.sizes(*step).is_some_and(|sizes| sizes.per_group.iter().all(|n| *n >= 2))
+        };
+        (about.saturating_sub(1).max(2)..=about + 2).find(enough).unwrap_or(about + 2)
+    }
+
+    /// Sizes when the group with the largest weight has `step` units: each `ceil(step * weight / largest weight)` in
+    /// exact decimal arithmetic, so that no group falls below its share. `None` beyond [`LARGEST_SIZE`].
     pub fn sizes(&self, step: u64) -> Option<Sizes> {
-        let smallest = Decimal::from_written(self.smallest_weight())?;
+        let largest = Decimal::from_written(self.largest_weight())?;
         let per_group = self
             .groups
             .iter()
-            .map(|g| Decimal::from_written(g.weight)?.times_over_ceil(step, smallest))
+            .map(|g| Decimal::from_written(g.weight)?.times_over_ceil(step, largest))
             .map(|n| n.filter(|n| *n <= LARGEST_SIZE))
             .collect::<Option<Vec<_>>>()?;
         let total = per_group.iter().sum();

@@ -35,7 +35,7 @@ pub struct RiskKeys {
     /// What protects the family of comparisons when there is more than one; `bonferroni` unless stated.
     #[serde(default)]
     pub multiplicity: Option<Multiplicity>,
-    /// Why these error rates.
+    /// Why these error rates, and above all why one side.
     #[serde(flatten)]
     pub grounds: Grounds,
 }
@@ -67,8 +67,8 @@ pub struct StatedRisk {
 pub fn read_risk(keys: &RiskKeys) -> Result<StatedRisk, Vec<Fault>> {
     let at = Path::of("risk");
     let mut faults = Vec::new();
-    let alpha = take(&keys.alpha, 0.05, &keys.grounds);
-    let power = take(&keys.power, 0.8, &keys.grounds);
+    let alpha = take(&keys.alpha, 0.05);
+    let power = take(&keys.power, 0.8);
     let mut refuse = |key: &str, assumed: &Option<Assumed>, reason: String, help: &str| {
         let step = assumed.as_ref().map_or("", Assumed::step);
         faults.push(Fault::value(at.key(key).join(&Path::of(step)), reason).help(help));
@@ -99,9 +99,9 @@ pub fn read_risk(keys: &RiskKeys) -> Result<StatedRisk, Vec<Fault>> {
     }
 }
 
-fn take(assumed: &Option<Assumed>, default: f64, grounds: &Grounds) -> Assumption {
+fn take(assumed: &Option<Assumed>, default: f64) -> Assumption {
     match assumed {
-        Some(assumed) => assumed.assumption(grounds),
+        Some(assumed) => assumed.assumption(&Grounds::default()),
         None => Assumption { value: default, grounds: Grounds::default(), defaulted: true },
     }
 }

@@ -6,7 +6,7 @@ use crate::numerics::scaled::Tails;
 use crate::numerics::special::beta::{BetaPoint, beta_tails};
 use crate::numerics::special::gamma::stirling_remainder;
 use crate::numerics::special::logarithms::ln_ratio_minus;
-use libm::{exp, log, log1p};
+use libm::{exp, fma, log, log1p};
 use std::f64::consts::TAU;
 
 /// Number of successes in `n` independent trials of probability `p`.
@@ -108,7 +108,8 @@ impl Binomial {
         if p == 0.0 || q == 0.0 {
             return f64::NEG_INFINITY;
         }
-        let gap = n * p - successes;
+        // Rounded once: the deviance multiplies an error of n p by its own size.
+        let gap = fma(n, p, -successes);
         let deviance = successes * ln_ratio_minus(n * p / successes, gap / successes)
             + failures * ln_ratio_minus(n * q / failures, -gap / failures);
         let remainder =
@@ -176,7 +177,7 @@ impl Binomial {
         let b = (k + 1) as f64;
         let odds = b * q / p;
         // b (1-p)/p - a without the cancellation near the mean.
-        let excess = (b - (a + b) * p) / p;
+        let excess = -fma(a + b, p, -b) / p;
         Some(beta_tails(BetaPoint::new(a, b, odds, excess)))
     }
 }

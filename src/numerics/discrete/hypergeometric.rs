@@ -180,9 +180,11 @@ impl Hypergeometric {
     /// The expected value.
     pub fn mean(&self) -> f64 {
         let at_mode = self.pmf(self.mode);
+        // Terms count by their distance from the mode, however small all of them are.
+        let least = NEGLIGIBLE * NEGLIGIBLE;
         let (mut below, mut above) = (0.0, 0.0);
-        self.walk_down(self.mode, |x, term| below += term * (self.mode - x) as f64);
-        self.walk_up(self.mode, |x, term| above += term * (x - self.mode) as f64);
+        self.walk_down(self.mode, least, |x, term| below += term * (self.mode - x) as f64);
+        self.walk_up(self.mode, least, |x, term| above += term * (x - self.mode) as f64);
         self.mode as f64 + at_mode * (above - below)
     }
 
@@ -213,19 +215,19 @@ impl Hypergeometric {
     /// Sum of all weights up to `x`, relative to that at `x`.
     fn sum_down(&self, x: u64) -> f64 {
         let mut sum = 0.0;
-        self.walk_down(x, |_, term| sum += term);
+        self.walk_down(x, NEGLIGIBLE, |_, term| sum += term);
         sum
     }
 
     /// Sum of all weights from `x` on, relative to that at `x`.
     fn sum_up(&self, x: u64) -> f64 {
         let mut sum = 0.0;
-        self.walk_up(x, |_, term| sum += term);
+        self.walk_up(x, NEGLIGIBLE, |_, term| sum += term);
         sum
     }
 
     /// Visits weights relative to that at `from`, downward until they no longer count.
-    fn walk_down(&self, from: u64, mut visit: impl FnMut(u64, f64)) {
+    fn walk_down(&self, from: u64, least: f64, mut visit: impl FnMut(u64, f64)) {
         let mut term = 1.0;
         let mut sum = 0.0;
         let mut x = from;
@@ -239,14 +241,14 @@ impl Hypergeometric {
             term *= shrink;
             x -= 1;
             // The ratios keep falling, so what is left is below a geometric series.
-            if shrink < 1.0 && term < NEGLIGIBLE * sum * (1.0 - shrink) {
+            if shrink < 1.0 && term < least * sum * (1.0 - shrink) {
                 return;
             }
         }
     }
 
     /// Visits weights relative to that at `from`, upward until they no longer count.
-    fn walk_up(&self, from: u64, mut visit: impl FnMut(u64, f64)) {
+    fn walk_up(&self, from: u64, least: f64, mut visit: impl FnMut(u64, f64)) {
         let mut term = 1.0;
         let mut sum = 0.0;
         let mut x = from;
@@ -259,7 +261,7 @@ impl Hypergeometric {
             let shrink = self.ratio_up(x);
             term *= shrink;
             x += 1;
-            if shrink < 1.0 && term < NEGLIGIBLE * sum * (1.0 - shrink) {
+            if shrink < 1.0 && term < least * sum * (1.0 - shrink) {
                 return;
             }
         }

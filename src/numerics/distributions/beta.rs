@@ -3,12 +3,42 @@
 use super::fisher_f::{f_tails, ln_central_ratio_density};
 use super::invert::positive_quantile;
 use super::noncentral_f::ratio_start;
-use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number};
+use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number, settled};
 use crate::numerics::error::Result;
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::{BetaPoint, beta_step, beta_tails};
 
 /// The beta distribution on [0, 1].
+///
+/// # Formula
+///
+/// ```text
+/// F(x) = I_x(a, b)
+/// ```
+///
+/// # Units and ranges
+///
+/// `a`, `b`: shapes, above 0 and at most 1e18. Close to 1 a double holds few digits of `1 - x`: an upper quantile
+/// there is as good as its own rounding.
+///
+/// # Accuracy
+///
+/// Tails and density: relative 1e-12, both tails down to 1e-290 (`tests/reference/central_tails.tsv`); quantiles: relative
+/// 1e-13 (`tests/reference/quantiles.csv`).
+///
+/// # Sources
+///
+/// As [`FisherF`](super::fisher_f::FisherF): `x` is turned into the ratio `b x / (a (1 - x))`, which keeps both ends.
+///
+/// # Example
+///
+/// ```
+/// use sufficit::numerics::{Continuous, Beta};
+///
+/// assert!((Beta::new(2.0, 3.0)?.cdf(0.5)? - 0.6875).abs() < 1e-15);
+/// assert!(Beta::new(0.0, 3.0).is_err());
+/// # Ok::<(), sufficit::numerics::NumericsError>(())
+/// ```
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Beta {
     a: f64,
@@ -16,7 +46,12 @@ pub struct Beta {
 }
 
 impl Beta {
-    /// The distribution with shapes `a > 0` and `b > 0`.
+    /// The distribution with shapes `a` and `b`.
+    ///
+    /// # Errors
+    ///
+    /// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) unless both are above 0 and at most
+    /// 1e18.
     pub fn new(a: f64, b: f64) -> Result<Self> {
         Ok(Self { a: degrees_of_freedom("a", a)?, b: degrees_of_freedom("b", b)? })
     }
@@ -75,19 +110,19 @@ impl Continuous for Beta {
     }
 
     fn cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).lower())
+        settled(self.tails(number("x", x)?).lower())
     }
 
     fn sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).upper())
+        settled(self.tails(number("x", x)?).upper())
     }
 
     fn ln_cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_lower())
+        settled(self.tails(number("x", x)?).ln_lower())
     }
 
     fn ln_sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_upper())
+        settled(self.tails(number("x", x)?).ln_upper())
     }
 
     fn quantile(&self, p: f64) -> Result<f64> {

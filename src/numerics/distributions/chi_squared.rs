@@ -1,20 +1,56 @@
 //! The chi-squared distribution.
 
 use super::invert::positive_quantile;
-use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number};
+use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number, settled};
 use crate::numerics::error::Result;
 use crate::numerics::scaled::Tails;
 use crate::numerics::special::gamma::{gamma_tails, log_gamma, poisson_density};
 use crate::numerics::special::normal::normal_quantile_guess;
 
-/// The chi-squared distribution with real degrees of freedom above 0.
+/// The chi-squared distribution.
+///
+/// # Formula
+///
+/// ```text
+/// F(x) = P(ν/2, x/2)
+/// ```
+///
+/// # Units and ranges
+///
+/// `ν` = `df`: degrees of freedom, above 0 and at most 1e18, need not be whole. `P` is the regularised lower incomplete
+/// gamma function.
+///
+/// # Accuracy
+///
+/// Tails and density: relative 1e-12, both tails down to 1e-290 (`tests/reference/central_tails.tsv`); quantiles: relative
+/// 1e-13 (`tests/reference/quantiles.csv`).
+///
+/// # Sources
+///
+/// Power series and continued fraction: DLMF 8.11.4 and 8.9.2. Start of the quantile: Wilson, Hilferty (1931), PNAS 17,
+/// 684-688.
+///
+/// # Example
+///
+/// ```
+/// use sufficit::numerics::{Continuous, ChiSquared};
+///
+/// let critical = ChiSquared::new(1.0)?.upper_quantile(0.05)?;
+/// assert!((critical - 3.841459).abs() < 1e-6);
+/// assert!(ChiSquared::new(0.0).is_err());
+/// # Ok::<(), sufficit::numerics::NumericsError>(())
+/// ```
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct ChiSquared {
     df: f64,
 }
 
 impl ChiSquared {
-    /// The distribution with `df` degrees of freedom, `0 < df < infinity`.
+    /// The distribution with `df` degrees of freedom.
+    ///
+    /// # Errors
+    ///
+    /// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) unless `0 < df <= 1e18`.
     pub fn new(df: f64) -> Result<Self> {
         Ok(Self { df: degrees_of_freedom("df", df)? })
     }
@@ -62,19 +98,19 @@ impl Continuous for ChiSquared {
     }
 
     fn cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).lower())
+        settled(self.tails(number("x", x)?).lower())
     }
 
     fn sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).upper())
+        settled(self.tails(number("x", x)?).upper())
     }
 
     fn ln_cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_lower())
+        settled(self.tails(number("x", x)?).ln_lower())
     }
 
     fn ln_sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_upper())
+        settled(self.tails(number("x", x)?).ln_upper())
     }
 
     fn quantile(&self, p: f64) -> Result<f64> {

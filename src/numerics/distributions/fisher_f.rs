@@ -1,13 +1,44 @@
 //! Fisher's F distribution.
 
 use super::invert::positive_quantile;
-use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number};
+use super::{Continuous, degrees_of_freedom, ln_density_at_zero, number, settled};
 use crate::numerics::error::Result;
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::{BetaPoint, beta_step, beta_tails};
 use crate::numerics::special::normal::normal_quantile_guess;
 
 /// Fisher's F distribution: the ratio of two independent chi-squared variables, each over its degrees of freedom.
+///
+/// # Formula
+///
+/// ```text
+/// F(f) = I_x(ν₁/2, ν₂/2),   x = ν₁ f / (ν₁ f + ν₂)
+/// ```
+///
+/// # Units and ranges
+///
+/// `ν₁` = `df1`, `ν₂` = `df2`: degrees of freedom, above 0 and at most 1e18, need not be whole.
+///
+/// # Accuracy
+///
+/// Tails and density: relative 1e-12, both tails down to 1e-290 (`tests/reference/central_tails.tsv`); quantiles: relative
+/// 1e-13 (`tests/reference/quantiles.csv`).
+///
+/// # Sources
+///
+/// Continued fraction: DiDonato, Morris (1992), ACM TOMS 18(3), 360-373. Start of the quantile: Paulson (1942), Annals of
+/// Mathematical Statistics 13, 233-235.
+///
+/// # Example
+///
+/// ```
+/// use sufficit::numerics::{Continuous, FisherF};
+///
+/// let critical = FisherF::new(3.0, 20.0)?.upper_quantile(0.05)?;
+/// assert!((critical - 3.098391).abs() < 1e-6);
+/// assert!(FisherF::new(3.0, f64::NAN).is_err());
+/// # Ok::<(), sufficit::numerics::NumericsError>(())
+/// ```
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct FisherF {
     a: f64,
@@ -15,7 +46,12 @@ pub struct FisherF {
 }
 
 impl FisherF {
-    /// The distribution with `df1 > 0` numerator and `df2 > 0` denominator degrees of freedom.
+    /// The distribution with `df1` numerator and `df2` denominator degrees of freedom.
+    ///
+    /// # Errors
+    ///
+    /// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) unless both are above 0 and at most
+    /// 1e18.
     pub fn new(df1: f64, df2: f64) -> Result<Self> {
         Ok(Self {
             a: 0.5 * degrees_of_freedom("df1", df1)?,
@@ -106,19 +142,19 @@ impl Continuous for FisherF {
     }
 
     fn cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).lower())
+        settled(self.tails(number("x", x)?).lower())
     }
 
     fn sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).upper())
+        settled(self.tails(number("x", x)?).upper())
     }
 
     fn ln_cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_lower())
+        settled(self.tails(number("x", x)?).ln_lower())
     }
 
     fn ln_sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_upper())
+        settled(self.tails(number("x", x)?).ln_upper())
     }
 
     fn quantile(&self, p: f64) -> Result<f64> {

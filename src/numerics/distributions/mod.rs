@@ -54,6 +54,16 @@ pub(crate) fn number(name: &'static str, x: f64) -> Result<f64> {
     }
 }
 
+/// Refuses a result that is not a number: some series or integral used up its terms.
+pub(crate) fn settled(value: f64) -> Result<f64> {
+    if value.is_nan() {
+        let what = "a tail probability";
+        Err(NumericsError::NoConvergence { what, low: f64::NAN, high: f64::NAN, evaluations: 0 })
+    } else {
+        Ok(value)
+    }
+}
+
 /// Refuses what is not a probability.
 pub(crate) fn probability(p: f64) -> Result<f64> {
     if (0.0..=1.0).contains(&p) {
@@ -84,7 +94,7 @@ pub(crate) fn positive(name: &'static str, value: f64) -> Result<f64> {
     }
 }
 
-/// Logarithm of a density at the lower end of its support, where it behaves like `scale^... x^(a - 1)`.
+/// Logarithm of a density at the lower end of its support, where it behaves like `x^(a - 1)`; `ln_value` is its value for `a = 1`.
 pub(crate) fn ln_density_at_zero(a: f64, ln_value: f64) -> f64 {
     if a < 1.0 {
         f64::INFINITY

@@ -190,7 +190,10 @@ pub(super) fn central_moment_integral(df: f64, ncp: f64, x: f64, power: f64) -> 
     let centre = x.mul_add(s, -ncp);
     let sum = over_log_scale(curvature, |offset, growth| {
         let g = centre + xs * growth;
-        Scaled { factor: INV_SQRT_TAU, exponent: scale.exponent(offset, growth) - 0.5 * g * g + power * offset }
+        Scaled {
+            factor: INV_SQRT_TAU,
+            exponent: scale.exponent(offset, growth) - 0.5 * g * g + power * offset,
+        }
     });
     sum.times(scale.norm() * if power > 0.0 { s } else { 1.0 })
 }

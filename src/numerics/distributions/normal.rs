@@ -7,6 +7,35 @@ use crate::numerics::special::normal::{
 };
 
 /// The normal distribution with mean 0 and standard deviation 1.
+///
+/// # Formula
+///
+/// ```text
+/// F(x) = Φ(x) = ½ erfc(-x / √2)
+/// ```
+///
+/// # Units and ranges
+///
+/// `x` any number.
+///
+/// # Accuracy
+///
+/// Tails: relative 2e-15, at 1e-300 still 1e-13; quantiles: relative 1e-15 (`tests/reference/quantiles.csv`).
+///
+/// # Sources
+///
+/// Tail: own Chebyshev fit of the Mills ratio. Quantile: Wichura (1988), Applied Statistics 37(3), 477-484, AS 241,
+/// with one Newton step on the logarithm of the tail beyond 5 standard deviations.
+///
+/// # Example
+///
+/// ```
+/// use sufficit::numerics::{Continuous, Normal};
+///
+/// assert!((Normal.upper_quantile(0.025)? - 1.959964).abs() < 1e-6);
+/// assert!(Normal.quantile(1.5).is_err());
+/// # Ok::<(), sufficit::numerics::NumericsError>(())
+/// ```
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
 pub struct Normal;
 
@@ -41,12 +70,20 @@ impl Continuous for Normal {
     }
 }
 
-/// The standard normal point whose lower tail is `p`.
+/// The standard normal point whose lower tail is `p`; see [`Normal`] for accuracy and source.
+///
+/// # Errors
+///
+/// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) when `p` is not between 0 and 1.
 pub fn normal_quantile(p: f64) -> Result<f64> {
     Ok(-normal_upper_quantile(p)?)
 }
 
-/// The standard normal point whose upper tail is `p`.
+/// The standard normal point whose upper tail is `p`; `p = 1e-300` works.
+///
+/// # Errors
+///
+/// As [`normal_quantile`].
 pub fn normal_upper_quantile(p: f64) -> Result<f64> {
     let p = probability(p)?;
     if p > 0.5 { Ok(-upper_half_quantile(1.0 - p)) } else { Ok(upper_half_quantile(p)) }
@@ -84,59 +121,59 @@ fn upper_half_quantile(p: f64) -> f64 {
 }
 
 const CENTRE_TOP: [f64; 8] = [
-    2.5090809287301226727e3,
-    3.3430575583588128105e4,
-    6.7265770927008700853e4,
-    4.5921953931549871457e4,
-    1.3731693765509461125e4,
-    1.9715909503065514427e3,
-    1.3314166789178437745e2,
-    3.3871328727963666080,
+    2509.0809287301227,
+    33430.57558358813,
+    67265.7709270087,
+    45921.95393154987,
+    13731.69376550946,
+    1971.5909503065513,
+    133.14166789178438,
+    3.3871328727963665,
 ];
 const CENTRE_BOTTOM: [f64; 7] = [
-    5.2264952788528545610e3,
-    2.8729085735721942674e4,
-    3.9307895800092710610e4,
-    2.1213794301586595867e4,
-    5.3941960214247511077e3,
-    6.8718700749205790830e2,
-    4.2313330701600911252e1,
+    5226.495278852854,
+    28729.085735721943,
+    39307.89580009271,
+    21213.794301586597,
+    5394.196021424751,
+    687.1870074920579,
+    42.31333070160091,
 ];
 const MIDDLE_TOP: [f64; 8] = [
-    7.74545014278341407640e-4,
-    2.27238449892691845833e-2,
-    2.41780725177450611770e-1,
-    1.27045825245236838258,
-    3.64784832476320460504,
-    5.76949722146069140550,
-    4.63033784615654529590,
-    1.42343711074968357734,
+    0.0007745450142783414,
+    0.022723844989269184,
+    0.2417807251774506,
+    1.2704582524523684,
+    3.6478483247632045,
+    5.769497221460691,
+    4.630337846156546,
+    1.4234371107496835,
 ];
 const MIDDLE_BOTTOM: [f64; 7] = [
-    1.05075007164441684324e-9,
-    5.47593808499534494600e-4,
-    1.51986665636164571966e-2,
-    1.48103976427480074590e-1,
-    6.89767334985100004550e-1,
-    1.67638483018380384940,
-    2.05319162663775882187,
+    1.0507500716444169e-9,
+    0.0005475938084995345,
+    0.015198666563616457,
+    0.14810397642748008,
+    0.6897673349851,
+    1.6763848301838038,
+    2.053191626637759,
 ];
 const FAR_TOP: [f64; 8] = [
-    2.01033439929228813265e-7,
-    2.71155556874348757815e-5,
-    1.24266094738807843860e-3,
-    2.65321895265761230930e-2,
-    2.96560571828504891230e-1,
-    1.78482653991729133580,
-    5.46378491116411436990,
-    6.65790464350110377720,
+    2.0103343992922881e-7,
+    2.7115555687434876e-5,
+    0.0012426609473880784,
+    0.026532189526576124,
+    0.29656057182850487,
+    1.7848265399172913,
+    5.463784911164114,
+    6.657904643501103,
 ];
 const FAR_BOTTOM: [f64; 7] = [
-    2.04426310338993978564e-15,
-    1.42151175831644588870e-7,
-    1.84631831751005468180e-5,
-    7.86869131145613259100e-4,
-    1.48753612908506148525e-2,
-    1.36929880922735805310e-1,
-    5.99832206555887937690e-1,
+    2.0442631033899397e-15,
+    1.421511758316446e-7,
+    1.8463183175100548e-5,
+    0.0007868691311456133,
+    0.014875361290850615,
+    0.1369298809227358,
+    0.599832206555888,
 ];

@@ -2,7 +2,7 @@
 
 use super::invert::{POSITIVE_RANGE, Scale, beyond_range, monotone_root};
 use super::normal::normal_upper_quantile;
-use super::{Continuous, degrees_of_freedom, number, probability};
+use super::{Continuous, degrees_of_freedom, number, probability, settled};
 use crate::numerics::error::Result;
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::{BetaPoint, beta_tails};
@@ -10,7 +10,40 @@ use crate::numerics::special::gamma::stirling_remainder;
 use crate::numerics::special::logarithms::ln_1p_minus;
 use crate::numerics::special::normal::LN_SQRT_TAU;
 
-/// Student's t distribution with real degrees of freedom above 0.
+/// Student's t distribution.
+///
+/// # Formula
+///
+/// ```text
+/// P(T > t) = ½ I_y(ν/2, ½),   y = ν / (ν + t²),   t >= 0
+/// f(t) = Γ((ν+1)/2) / (Γ(ν/2) √(νπ)) · (1 + t²/ν)^(-(ν+1)/2)
+/// ```
+///
+/// # Units and ranges
+///
+/// `ν` = `df`: degrees of freedom, above 0 and at most 1e18, need not be whole. `I` is the regularised incomplete beta
+/// function.
+///
+/// # Accuracy
+///
+/// Tails and density: relative 1e-12, both tails down to 1e-290 (`tests/reference/central_tails.tsv`); quantiles: relative
+/// 1e-13 (`tests/reference/quantiles.csv`).
+///
+/// # Sources
+///
+/// Johnson, Kotz, Balakrishnan (1995), Continuous Univariate Distributions 2, chapter 28. Quantile: Newton's method on
+/// the logarithm of the tail, or of the mass between 0 and t near the centre.
+///
+/// # Example
+///
+/// ```
+/// use sufficit::numerics::{Continuous, StudentT};
+///
+/// let critical = StudentT::new(10.0)?.upper_quantile(0.025)?;
+/// assert!((critical - 2.228139).abs() < 1e-6);
+/// assert!(StudentT::new(-1.0).is_err());
+/// # Ok::<(), sufficit::numerics::NumericsError>(())
+/// ```
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct StudentT {
     df: f64,
@@ -24,7 +57,11 @@ const POWER_TAIL: f64 = 1e18;
 const SQUARABLE: f64 = 1e120;
 
 impl StudentT {
-    /// The distribution with `df` degrees of freedom, `0 < df < infinity`.
+    /// The distribution with `df` degrees of freedom.
+    ///
+    /// # Errors
+    ///
+    /// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) unless `0 < df <= 1e18`.
     pub fn new(df: f64) -> Result<Self> {
         let df = degrees_of_freedom("df", df)?;
         let b = 0.5 * df;
@@ -98,9 +135,20 @@ impl StudentT {
         let ln_power = 0.5 * libm::log(self.df)
             + (self.ln_peak - 0.5 * libm::log(self.df) - libm::log(p)) / self.df;
         let z2 = normal * normal;
-        let stretched =
-            if z2 < self.df { normal * (1.0 + (z2 + 1.0) / (4.0 * self.df)) } else { f64::MAX };
+        let stretched = if z2 < self.df { normal * self.stretch(z2) } else { f64::MAX };
         Ok(stretched.min(libm::exp(ln_power.min(700.0))).max(1e-300))
+    }
+}
+
+impl StudentT {
+    /// Quantile of t over that of the normal with the square `z2`: Fisher, Cornish (1960), Technometrics 2, 209-225, in
+    /// the form of Abramowitz, Stegun (1964), 26.7.5.
+    fn stretch(&self, z2: f64) -> f64 {
+        let v = 1.0 / self.df;
+        let second = ((5.0 * z2 + 16.0) * z2 + 3.0) / 96.0;
+        let third = (((3.0 * z2 + 19.0) * z2 + 17.0) * z2 - 15.0) / 384.0;
+        let fourth = ((((79.0 * z2 + 776.0) * z2 + 1482.0) * z2 - 1920.0) * z2 - 945.0) / 92160.0;
+        1.0 + v * ((z2 + 1.0) / 4.0 + v * (second + v * (third + v * fourth)))
     }
 }
 
@@ -116,19 +164,19 @@ impl Continuous for StudentT {
     }
 
     fn cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).lower())
+        settled(self.tails(number("x", x)?).lower())
     }
 
     fn sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).upper())
+        settled(self.tails(number("x", x)?).upper())
     }
 
     fn ln_cdf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_lower())
+        settled(self.tails(number("x", x)?).ln_lower())
     }
 
     fn ln_sf(&self, x: f64) -> Result<f64> {
-        Ok(self.tails(number("x", x)?).ln_upper())
+        settled(self.tails(number("x", x)?).ln_upper())
     }
 
     fn quantile(&self, p: f64) -> Result<f64> {

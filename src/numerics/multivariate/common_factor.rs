@@ -61,7 +61,7 @@ pub(super) struct CommonFactor {
 impl CommonFactor {
     /// # Errors
     ///
-    /// [`NumericsError::OutOfDomain`] when there is none or more than 10⁴, a loading is not inside (-1, 1), or a
+    /// [`NumericsError::OutOfDomain`] when there is none or more than 1000, a loading is not inside (-1, 1), or a
     /// shift is not finite or above 10⁶.
     pub(super) fn new(
         statistics: impl IntoIterator<Item = Statistic>,
@@ -82,11 +82,11 @@ impl CommonFactor {
                 None => factors.push(Factor { loading, own: own_square.sqrt(), shift, count: 1.0 }),
             }
         }
-        if !(1.0..=10_000.0).contains(&count) {
+        if !(1.0..=1000.0).contains(&count) {
             return Err(NumericsError::OutOfDomain {
                 name: "comparisons",
                 given: count,
-                allowed: "from 1 to 10000",
+                allowed: "from 1 to 1000",
             });
         }
         Ok(CommonFactor { factors, sides, count, largest_shift })

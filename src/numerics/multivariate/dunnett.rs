@@ -28,7 +28,7 @@ const WHAT: &str = "comparisons with a control";
 ///
 /// # Units and ranges
 ///
-/// 1 to 10⁴ comparisons, `-1 < λᵢ < 1`, `ν >= 0.5` degrees of freedom (infinite: known standard deviation).
+/// 1 to 1000 comparisons, `-1 < λᵢ < 1`, `ν >= 0.5` degrees of freedom (infinite: known standard deviation).
 ///
 /// # Accuracy
 ///
@@ -63,7 +63,7 @@ impl Dunnett {
     ///
     /// # Errors
     ///
-    /// [`NumericsError::OutOfDomain`] when there is none or more than 10⁴, a loading is not inside (-1, 1), or the
+    /// [`NumericsError::OutOfDomain`] when there is none or more than 1000, a loading is not inside (-1, 1), or the
     /// degrees of freedom are below 1/2.
     pub fn new(loadings: &[f64], sides: Sides, df: f64) -> Result<Self> {
         let statistics = loadings.iter().map(|&loading| unshifted(loading));
@@ -85,7 +85,7 @@ impl Dunnett {
         }
         let statistic = Statistic { loading: rho.sqrt(), own_square: 1.0 - rho, shift: 0.0 };
         // One more than allowed is enough to be refused.
-        let statistics = std::iter::repeat_n(statistic, comparisons.min(10_001));
+        let statistics = std::iter::repeat_n(statistic, comparisons.min(1001));
         Self::from_statistics(CommonFactor::new(statistics, sides)?, sides, df)
     }
 
@@ -228,7 +228,7 @@ impl Dunnett {
 ///
 /// # Units and ranges
 ///
-/// 1 to 10⁴ comparisons, `-1 < λᵢ < 1`, `|δᵢ| <= 10⁶`, `ν >= 0.5` degrees of freedom (infinite: known standard
+/// 1 to 1000 comparisons, `-1 < λᵢ < 1`, `|δᵢ| <= 10⁶`, `ν >= 0.5` degrees of freedom (infinite: known standard
 /// deviation).
 ///
 /// # Accuracy

@@ -11,6 +11,9 @@ const NARROW: f64 = 0.02;
 /// See [`NARROW`].
 const FLAT: f64 = 0.05;
 
+/// Over narrower intervals the density is constant to rounding.
+const POINT: f64 = 1e-8;
+
 /// From here on tails are handled by their logarithm.
 const FAR: f64 = 36.0;
 
@@ -48,11 +51,14 @@ fn narrow_interval(middle: f64, half: f64) -> f64 {
 /// Logarithm of [`normal_interval`], also where the probability is next to 1 (it may be multiplied by thousands) and
 /// where it is below the smallest double.
 pub(super) fn log_interval(low: f64, width: f64) -> f64 {
+    let middle = low + 0.5 * width;
+    if width > 0.0 && width < POINT && width * middle.abs() < POINT {
+        return log(width) - 0.5 * middle * middle - LN_SQRT_TAU;
+    }
     let outside = normal_cdf(low) + normal_sf(low + width);
     if outside < 0.9 {
         return log1p(-outside);
     }
-    let middle = low + 0.5 * width;
     if middle.abs() - 0.5 * width < FAR {
         return log(normal_interval(low, width));
     }

@@ -14,6 +14,9 @@ const NEGLIGIBLE: f64 = 42.0;
 /// Integrals with a smaller logarithm are below the smallest double.
 const SMALLEST: f64 = -760.0;
 
+/// A largest sample with a smaller logarithm may be far below the true peak between the samples.
+const SHARP: f64 = -40.0;
+
 /// No search goes farther out: the density of a normal variable has left the range of doubles.
 const FARTHEST: f64 = 80.0;
 
@@ -67,6 +70,8 @@ pub(super) fn support(region: Region, log_f: &impl Fn(f64) -> f64) -> Support {
         low -= 1.0;
         samples.push_front(look(low, &mut peak));
     }
+    let best = samples.iter().position(|&value| value == peak).unwrap_or(0);
+    let at_best = SPACING * (low + best as f64);
     // The outermost sample kept does not count, its neighbour does.
     while samples.len() > 2 && !counts(samples.iter().rev().nth(1), peak) {
         samples.pop_back();
@@ -76,7 +81,28 @@ pub(super) fn support(region: Region, log_f: &impl Fn(f64) -> f64) -> Support {
         samples.pop_front();
         low += 1.0;
     }
+    if peak < SHARP && peak > f64::NEG_INFINITY {
+        peak = peak.max(refined_peak(at_best, log_f));
+    }
     Support { low: SPACING * low, high: SPACING * high, peak }
+}
+
+/// The largest value within one spacing of a sample, by golden section.
+fn refined_peak(middle: f64, log_f: &impl Fn(f64) -> f64) -> f64 {
+    const GOLDEN: f64 = 0.618_033_988_749_894_9;
+    let (mut low, mut high) = (middle - SPACING, middle + SPACING);
+    let mut peak = f64::NEG_INFINITY;
+    for _ in 0..24 {
+        let width = GOLDEN * (high - low);
+        let (left, right) = (log_f(high - width), log_f(low + width));
+        peak = peak.max(left).max(right);
+        if left > right {
+            high = low + width;
+        } else {
+            low = high - width;
+        }
+    }
+    peak
 }
 
 /// `∫ exp(log_f)` over the line by the trapezoidal rule, starting with the step given.

@@ -26,7 +26,7 @@ const FAR: f64 = 40.0;
 ///
 /// # Units and ranges
 ///
-/// 2 to 10⁴ means, `|μᵢ| <= 10⁶`, `ν >= 0.5` degrees of freedom (infinite: known standard deviation).
+/// 2 to 1000 means, `|μᵢ| <= 10⁶`, `ν >= 0.5` degrees of freedom (infinite: known standard deviation).
 ///
 /// # Accuracy
 ///
@@ -49,11 +49,11 @@ impl ShiftedRange {
     ///
     /// [`NumericsError::OutOfDomain`] when an argument is outside its range.
     pub fn new(means: &[f64], df: f64) -> Result<Self> {
-        if !(2..=10_000).contains(&means.len()) {
+        if !(2..=1000).contains(&means.len()) {
             return Err(NumericsError::OutOfDomain {
                 name: "means",
                 given: means.len() as f64,
-                allowed: "from 2 to 10000",
+                allowed: "from 2 to 1000",
             });
         }
         for &given in means {

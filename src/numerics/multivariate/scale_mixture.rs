@@ -6,15 +6,14 @@
 use super::spread::Spread;
 use crate::numerics::error::{NumericsError, Result};
 use crate::numerics::roots::{Tolerance, bracket_around, refine};
-use crate::numerics::special::gamma::stirling_remainder;
-use crate::numerics::special::logarithms::ln_1p_minus;
 use libm::{exp, expm1, log, log1p};
 use std::collections::BTreeMap;
 
 /// What is left out on either side of the sum, relative to it.
 const NEGLIGIBLE: f64 = 1e-17;
 
-/// From these degrees of freedom on the grid is laid anew around the root, to keep rounding of `ln c` out of it.
+/// From these degrees of freedom on the grid is laid around the root for a known standard deviation, which is so near
+/// that rounding of `ln c` stays out of the sums.
 const FINE_GRID_FROM: f64 = 1e4;
 
 /// Largest shift for which the even grid of this file is the cheaper way.
@@ -62,7 +61,7 @@ pub(super) struct ScaleMixture<F> {
     tail: Tail<F>,
     df: f64,
     first_step: f64,
-    peak: f64,
+    spread: Spread,
     anchor: f64,
     /// The tail at `anchor * exp(key * finest step)`.
     seen: BTreeMap<i64, f64>,
@@ -84,8 +83,14 @@ impl<F: Fn(f64) -> Result<f64>> ScaleMixture<F> {
         // The first bound resolves the double exponential, the second the bell of width 1 / sqrt(2 ν) and a turn
         // of width 1 / δ.
         let first_step = f64::min(0.13, 0.65 / (df + 0.5 * shift * shift).sqrt());
-        let peak = (df / std::f64::consts::PI).sqrt() * exp(-stirling_remainder(0.5 * df));
-        ScaleMixture { tail, df, first_step, peak, anchor, seen: BTreeMap::new() }
+        ScaleMixture {
+            tail,
+            df,
+            first_step,
+            spread: Spread::new(df),
+            anchor,
+            seen: BTreeMap::new(),
+        }
     }
 
     /// The mean of the tail at the critical value `c`, which has the sign of the anchor.
@@ -147,7 +152,7 @@ impl<F: Fn(f64) -> Result<f64>> ScaleMixture<F> {
         let mut j = from;
         loop {
             let u = j * grid.step - shift;
-            let weight = self.density(u);
+            let weight = self.spread.density_of_log(u);
             let here = self.tail_at(grid, j)?;
             *sum += weight * here;
             // Beyond u the density falls at least as fast as at rate ν (e^2u - 1) and the tail is monotone.
@@ -165,7 +170,7 @@ impl<F: Fn(f64) -> Result<f64>> ScaleMixture<F> {
         let mut j = from;
         let mut at_limit = false;
         loop {
-            let weight = self.density(j * grid.step - shift);
+            let weight = self.spread.density_of_log(j * grid.step - shift);
             let here = if at_limit { self.tail.at_zero } else { self.tail_at(grid, j)? };
             *sum += weight * here;
             // Being monotone, the tail stays where it is once it has met its limit at 0.
@@ -176,11 +181,6 @@ impl<F: Fn(f64) -> Result<f64>> ScaleMixture<F> {
             }
             j -= grid.stride;
         }
-    }
-
-    /// Density of `u = ln s`: `sqrt(ν/π) exp(-σ(ν/2)) exp(ν/2 (ln(1+x) - x))`, `x = e^2u - 1`, `σ` Stirling's remainder.
-    fn density(&self, u: f64) -> f64 {
-        self.peak * exp(0.5 * self.df * ln_1p_minus_of_square(u))
     }
 
     fn tail_at(&mut self, grid: &Grid, j: f64) -> Result<f64> {
@@ -218,12 +218,6 @@ impl Grid {
     }
 }
 
-/// `ln(1 + x) - x` for `x = e^2u - 1`: the logarithm is `2u` itself where nothing cancels.
-fn ln_1p_minus_of_square(u: f64) -> f64 {
-    let x = expm1(2.0 * u);
-    if x > -0.4 && x < 0.5 { ln_1p_minus(x) } else { 2.0 * u - x }
-}
-
 /// The critical value at which the mean of `tail` equals `p`, on the side of `guess`.
 ///
 /// Solved in `ln |c|` for `ln(tail / p)`, which is nearly a straight line far out.
@@ -237,26 +231,24 @@ pub(super) fn solve<F: Fn(f64) -> Result<f64>>(
     // The logarithms of the normal doubles.
     const LIMITS: (f64, f64) = (-708.0, 709.0);
     let sign = guess.signum();
-    let start = log(guess.abs()).clamp(LIMITS.0, LIMITS.1);
-    let mut mixture = ScaleMixture::new(tail, df, sign * exp(start), 0.0);
-    let mut step = 0.125;
-    let mut start = start;
-    let rounds = if df >= FINE_GRID_FROM { 2 } else { 1 };
-    for round in 1..=rounds {
-        let mut distance = |x: f64| Ok(log(mixture.at(sign * exp(x))? / p));
-        let bracket = bracket_around(what, start, step, LIMITS, &mut distance)?;
-        let tolerance = Tolerance {
-            absolute: if round == rounds { 1e-15 } else { 1e-5 },
-            relative: 0.0,
-            ..Tolerance::default()
+    let solve_from =
+        |start: f64, step: f64, precision: f64, value: &mut dyn FnMut(f64) -> Result<f64>| {
+            let mut distance = |x: f64| Ok(log(value(sign * exp(x))? / p));
+            let bracket = bracket_around(what, start, step, LIMITS, &mut distance)?;
+            let tolerance =
+                Tolerance { absolute: precision, relative: 0.0, ..Tolerance::default() };
+            Ok::<f64, NumericsError>(refine(what, bracket, tolerance, &mut distance)?.at)
         };
-        start = refine(what, bracket, tolerance, &mut distance)?.at;
-        step = 2e-5;
-        if round < rounds {
-            mixture = ScaleMixture::new(mixture.tail, df, sign * exp(start), 0.0);
-        }
+    let mut start = log(guess.abs()).clamp(LIMITS.0, LIMITS.1);
+    let mut step = 0.125;
+    if df >= FINE_GRID_FROM {
+        start = solve_from(start, step, 1e-9, &mut |c| (tail.inner)(c))?;
+        let c = exp(start);
+        step = ((1.0 + c * c) / df).clamp(1e-13, step);
     }
-    Ok(sign * exp(start))
+    let mut mixture = ScaleMixture::new(tail, df, sign * exp(start), 0.0);
+    let root = solve_from(start, step, 1e-15, &mut |c| mixture.at(c))?;
+    Ok(sign * exp(root))
 }
 
 /// Degrees of freedom of at least 1/2, infinity meaning a known standard deviation.

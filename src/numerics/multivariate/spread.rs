@@ -22,9 +22,17 @@ pub(super) struct Spread {
 }
 
 impl Spread {
-    /// For finite degrees of freedom of at least 1/2.
+    /// For degrees of freedom of at least 1/2; the density of infinitely many is of no use.
     pub(super) fn new(df: f64) -> Self {
         Spread { df, peak: (df / std::f64::consts::PI).sqrt() * exp(-stirling_remainder(0.5 * df)) }
+    }
+
+    /// Density of `u = ln s`: `sqrt(ν/π) exp(-σ(ν/2)) exp(ν/2 (ln(1+x) - x))`, `x = e^2u - 1`, `σ` Stirling's remainder.
+    pub(super) fn density_of_log(&self, u: f64) -> f64 {
+        let x = expm1(2.0 * u);
+        // Where nothing cancels, the logarithm is 2 u itself.
+        let exponent = if x > -0.4 && x < 0.5 { ln_1p_minus(x) } else { 2.0 * u - x };
+        self.peak * exp(0.5 * self.df * exponent)
     }
 
     /// `E[f(s); s <= limit]` for a bounded `f` that turns near the places named; 1e-15 absolute for smooth `f`.
@@ -52,10 +60,7 @@ impl Spread {
         let low = 0.5 * log1p(-2.0 * share.sqrt());
         let high = (0.5 * log1p(2.0 * share.sqrt() + 2.0 * share)).min(log(limit));
         let turns: Vec<f64> = turns.iter().map(|&turn| log(turn)).chain([0.0]).collect();
-        panels(low, high, &turns, |u| {
-            let density = self.peak * exp(0.5 * self.df * ln_1p_minus(expm1(2.0 * u)));
-            Ok(density * f(exp(u))?)
-        })
+        panels(low, high, &turns, |u| Ok(self.density_of_log(u) * f(exp(u))?))
     }
 
     /// Over `y = sqrt(s)`, which makes the power `s^(ν-1)` at 0 a smooth one for half degrees of freedom too.

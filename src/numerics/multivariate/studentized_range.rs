@@ -38,7 +38,7 @@ const FAR: f64 = 56.0;
 ///
 /// # Units and ranges
 ///
-/// `k` from 2 to 10⁴ means, `ν >= 0.5` degrees of freedom (infinite: known standard deviation), `q >= 0`.
+/// `k` from 2 to 1000 means, `ν >= 0.5` degrees of freedom (infinite: known standard deviation), `q >= 0`.
 ///
 /// # Accuracy
 ///
@@ -71,14 +71,14 @@ impl StudentizedRange {
     ///
     /// # Errors
     ///
-    /// [`NumericsError::OutOfDomain`] for fewer than 2 or more than 10⁴ means, or fewer than 1/2 degrees
+    /// [`NumericsError::OutOfDomain`] for fewer than 2 or more than 1000 means, or fewer than 1/2 degrees
     /// of freedom.
     pub fn new(means: u64, df: f64) -> Result<Self> {
-        if !(2..=10_000).contains(&means) {
+        if !(2..=1000).contains(&means) {
             return Err(NumericsError::OutOfDomain {
                 name: "means",
                 given: means as f64,
-                allowed: "from 2 to 10000",
+                allowed: "from 2 to 1000",
             });
         }
         Ok(StudentizedRange { means: means as f64, df: checked_df(df)? })

@@ -32,9 +32,9 @@ pub(crate) fn ln_1p_minus_near_zero(x: f64) -> f64 {
     // |r| <= 1/4, so that fourteen terms reach 1e-18.
     // Two interleaved polynomials in the square shorten the chain of dependent operations.
     let square = y * y;
-    let sum = RECIPROCALS.iter().fold((0.0, 0.0), |(even, odd), pair| {
-        (even * square + pair.0, odd * square + pair.1)
-    });
+    let sum = RECIPROCALS
+        .iter()
+        .fold((0.0, 0.0), |(even, odd), pair| (even * square + pair.0, odd * square + pair.1));
     r * (2.0 * y * (sum.0 + y * sum.1) - x)
 }
 

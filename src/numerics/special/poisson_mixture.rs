@@ -77,7 +77,7 @@ pub(crate) fn lower_sum(family: impl Family, weights: Weights) -> Scaled {
     loop {
         let (top, bottom) = family.growth(j);
         let next = g * (w * top / (bottom * (q + j + 1.0)));
-        if next <= NEGLIGIBLE {
+        if next.is_nan() || next <= NEGLIGIBLE {
             break;
         }
         g = next;
@@ -116,7 +116,7 @@ pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
     while j >= 1.0 {
         let (top, bottom) = family.growth(j - 1.0);
         let next = g * ((q + j) * bottom / (w * top));
-        if next <= NEGLIGIBLE {
+        if next.is_nan() || next <= NEGLIGIBLE {
             break;
         }
         g = next;

@@ -2,7 +2,7 @@
 
 use crate::numerics::scaled::Scaled;
 
-/// Terms on either side of the start; the widest integrand, at a hundredth of a degree of freedom, needs 35 000.
+/// Terms allowed on either side of the start, beyond which the sum is not a number; the widest integrand, at a hundredth of a degree of freedom, needs 35 000.
 const TERMS: u32 = 40_000;
 
 /// Terms below this share of the sum are left out.
@@ -40,9 +40,9 @@ fn one_side(top: Scaled, sum: f64, step: f64, mut f: impl FnMut(f64) -> Scaled) 
         let term = here.factor * libm::exp(here.exponent - top.exponent);
         sum += term;
         if term <= NEGLIGIBLE * sum && term <= previous {
-            break;
+            return sum;
         }
         previous = term;
     }
-    sum
+    f64::NAN
 }

@@ -5,6 +5,7 @@ use plotters::style::{Color, RGBColor};
 
 use super::FigureError;
 use super::canvas::{Align, Canvas, Frame, WIDTH};
+use super::clip::opened;
 use super::palette::{FAINT, GREY, INK, LABEL, RULE, SMALL};
 use super::place::Rect;
 use super::text::{Block, CAPITALS};
@@ -71,12 +72,23 @@ impl Axes {
         Rect { left: left + 2.0, top: top - 6.0, right: right - 2.0, bottom: bottom - 4.0 }
     }
 
-    /// Rules below the data.
-    pub(super) fn grid(&self, canvas: &mut Canvas) -> Result<(), FigureError> {
-        let Frame { x, .. } = self.frame;
+    /// The rules of the grid on the canvas.
+    pub(super) fn rules(&self) -> impl Iterator<Item = [(f64, f64); 2]> {
+        let Frame { left, right, .. } = self.frame;
+        self.y_ticks.iter().map(move |(y, _)| {
+            let level = self.frame.py(*y);
+            [(left, level), (right, level)]
+        })
+    }
+
+    /// Rules below the data, open at the gaps.
+    pub(super) fn grid(&self, canvas: &mut Canvas, gaps: &[Rect]) -> Result<(), FigureError> {
+        let pieces = self.rules().flat_map(|[from, to]| opened(vec![vec![from, to]], gaps));
         canvas.layer(&self.frame, "", |area| {
-            for (y, _) in &self.y_ticks {
-                area.draw(&rule((x.0, *y), (x.1, *y), FAINT, 8))?;
+            for piece in pieces {
+                let points: Vec<_> =
+                    piece.into_iter().map(|point| self.frame.data(point)).collect();
+                area.draw(&PathElement::new(points, FAINT.stroke_width(8)))?;
             }
             Ok(())
         })

@@ -131,10 +131,10 @@ impl Canvas {
         }
     }
 
-    /// A veil of paper that keeps text apart from what it lies on.
-    pub(super) fn veil(&mut self, rect: Rect) {
+    /// A plate of paper that keeps text apart from what it lies on.
+    pub(super) fn plate(&mut self, rect: Rect) {
         self.put(format_args!(
-            "<rect x=\"{}\" y=\"{}\" width=\"{}\" height=\"{}\" rx=\"3\" fill=\"{}\" opacity=\"0.85\"/>\n",
+            "<rect x=\"{}\" y=\"{}\" width=\"{}\" height=\"{}\" rx=\"3\" fill=\"{}\"/>\n",
             number(rect.left),
             number(rect.top),
             number(rect.right - rect.left),

@@ -16,7 +16,7 @@ pub(super) fn line_inside(points: &[Point], rect: Rect) -> Vec<Vec<Point>> {
 }
 
 /// The parts of lines outside the rectangle.
-pub(super) fn lines_outside(lines: &[Vec<Point>], rect: Rect) -> Vec<Vec<Point>> {
+fn lines_outside(lines: &[Vec<Point>], rect: Rect) -> Vec<Vec<Point>> {
     let mut pieces: Vec<Vec<Point>> = Vec::new();
     for line in lines {
         for (from, to) in line.iter().zip(line.iter().skip(1)) {
@@ -30,6 +30,32 @@ pub(super) fn lines_outside(lines: &[Vec<Point>], rect: Rect) -> Vec<Vec<Point>>
         }
     }
     pieces
+}
+
+/// Space between a label and the ends of a line that it interrupts.
+const GAP: f64 = 3.5;
+/// A line that passes a label at this distance or farther is not interrupted.
+const TOUCH: f64 = 1.5;
+/// Shortest piece of an interrupted line.
+const STUB: f64 = 8.0;
+
+/// Lines interrupted by labels, without the stubs that are left between two of them.
+pub(super) fn opened(lines: Vec<Vec<Point>>, labels: &[Rect]) -> Vec<Vec<Point>> {
+    let mut pieces = lines;
+    for label in labels {
+        let close = label.grown(TOUCH);
+        let (hit, clear): (Vec<_>, Vec<_>) =
+            pieces.into_iter().partition(|piece| close.length_of(piece) > 0.0);
+        let cut = lines_outside(&hit, label.grown(GAP));
+        pieces = clear;
+        pieces.extend(cut.into_iter().filter(|piece| length(piece) >= STUB));
+    }
+    pieces
+}
+
+fn length(points: &[Point]) -> f64 {
+    let steps = points.iter().zip(points.iter().skip(1));
+    steps.map(|((x0, y0), (x1, y1))| ((x1 - x0) * (x1 - x0) + (y1 - y0) * (y1 - y0)).sqrt()).sum()
 }
 
 /// Joins a segment to the last piece if it goes on from its end.
@@ -98,6 +124,16 @@ mod tests {
                 vec![(5.0, 10.0), (5.0, 15.0), (8.0, 15.0), (8.0, 10.0)]
             ]
         );
+    }
+
+    #[test]
+    fn an_interrupted_line_leaves_no_stubs() {
+        let line = vec![vec![(0.0, 5.0), (100.0, 5.0)]];
+        let labels = [Rect::new(20.0, 0.0, 10.0, 10.0), Rect::new(42.0, 0.0, 10.0, 10.0)];
+        let pieces = opened(line.clone(), &labels);
+        assert_eq!(pieces, [vec![(0.0, 5.0), (16.5, 5.0)], vec![(55.5, 5.0), (100.0, 5.0)]]);
+        assert_eq!(opened(line.clone(), &[Rect::new(20.0, 7.0, 10.0, 10.0)]), line);
+        assert_eq!(opened(line, &[Rect::new(20.0, 6.0, 10.0, 10.0)]).len(), 2);
     }
 
     #[test]

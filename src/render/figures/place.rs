@@ -79,27 +79,43 @@ pub(super) struct Obstacles {
     taken: Vec<Rect>,
     marks: Vec<Rect>,
     lines: Vec<(Vec<(f64, f64)>, f64)>,
+    yielding: Vec<[(f64, f64); 2]>,
 }
 
 /// A place for a label and what is wrong with it.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Spot {
     pub(super) rect: Rect,
-    /// Nothing is covered when it is zero.
-    pub(super) covers: f64,
+    /// Whether something lies below a label here.
+    pub(super) covers: bool,
+    /// The worse the place, the higher.
+    pub(super) cost: f64,
 }
 
 /// Overlapping another label counts this much more than crossing a line.
 const LABEL_WEIGHT: f64 = 8.0;
+/// As much as a unit of covered line counts against a unit of distance.
+const COVER_WEIGHT: f64 = 10.0;
+/// What a unit of a line that yields to labels counts.
+const YIELDING_WEIGHT: f64 = 1.0;
+/// What a line crossed by a leader counts, and a label.
+const CROSSING: (f64, f64) = (14.0, 400.0);
 
 impl Obstacles {
     /// Space kept free between a label and a line.
     pub(super) const AIR: f64 = 3.0;
+    /// A line this near to a label counts as below it.
+    const TOUCH: f64 = 1.0;
     /// Space kept free between two labels.
     const APART: f64 = 8.0;
 
     pub(super) fn new(room: Rect) -> Self {
-        Self { room, taken: Vec::new(), marks: Vec::new(), lines: Vec::new() }
+        Self { room, taken: Vec::new(), marks: Vec::new(), lines: Vec::new(), yielding: Vec::new() }
+    }
+
+    /// A line that is left open where a label stands; labels had rather stand elsewhere.
+    pub(super) fn yielding(&mut self, from: (f64, f64), to: (f64, f64)) {
+        self.yielding.push([from, to]);
     }
 
     /// A line on the canvas; a heavy one is crossed less gladly.
@@ -128,20 +144,26 @@ impl Obstacles {
         labels * LABEL_WEIGHT + lines
     }
 
-    /// The best of the places inside the room: least covered, then least dislike (the second number), then first.
-    /// A place outside the room is moved to its nearest edge.
-    pub(super) fn best(&self, places: impl Iterator<Item = (Rect, f64)>) -> Option<Spot> {
-        let mut best: Option<(f64, Spot)> = None;
-        for (rect, dislike) in places {
-            let inside = self.moved_inside(rect);
-            let shift = (inside.left - rect.left).abs() + (inside.top - rect.top).abs();
-            let covers = self.covers(inside);
-            let cost = 10.0 * covers + dislike + shift;
-            if best.is_none_or(|(least, _)| cost < least) {
-                best = Some((cost, Spot { rect: inside, covers }));
-            }
-        }
-        best.map(|(_, spot)| spot)
+    /// A place, moved to the nearest edge of the room if it lies outside, and what speaks against it.
+    pub(super) fn weigh(&self, rect: Rect) -> Spot {
+        let inside = self.moved_inside(rect);
+        let shift = (inside.left - rect.left).abs() + (inside.top - rect.top).abs();
+        let clear = inside.grown(Self::AIR);
+        let opened: f64 = self.yielding.iter().map(|line| clear.length_of(line)).sum();
+        let close = inside.grown(Self::TOUCH);
+        let covers = self.lines.iter().any(|(points, _)| close.length_of(points) > 0.0)
+            || self.marks.iter().chain(&self.taken).any(|other| close.overlap(*other) > 0.0);
+        let cost = COVER_WEIGHT * self.covers(inside) + YIELDING_WEIGHT * opened + shift;
+        Spot { rect: inside, covers, cost }
+    }
+
+    /// What speaks against a leader.
+    pub(super) fn weigh_leader(&self, from: (f64, f64), to: (f64, f64)) -> f64 {
+        let segments = self.lines.iter().flat_map(|(line, _)| line.iter().zip(line.iter().skip(1)));
+        let lines = segments.filter(|(a, b)| cross((from, to), (**a, **b))).count() as f64;
+        let labels = self.taken.iter().filter(|rect| rect.span(from, to).is_some()).count() as f64;
+        let marks: f64 = self.marks.iter().map(|rect| rect.crossed(from, to)).sum();
+        CROSSING.0 * lines + CROSSING.1 * labels + marks
     }
 
     fn moved_inside(&self, rect: Rect) -> Rect {
@@ -153,6 +175,14 @@ impl Obstacles {
         let top = rect.top.min(self.room.bottom - height).max(self.room.top);
         Rect::new(left, top, width, height)
     }
+}
+
+/// Whether two segments cross.
+fn cross((a, b): ((f64, f64), (f64, f64)), (c, d): ((f64, f64), (f64, f64))) -> bool {
+    let side = |(x0, y0): (f64, f64), (x1, y1): (f64, f64), (x, y): (f64, f64)| {
+        (x1 - x0) * (y - y0) - (y1 - y0) * (x - x0)
+    };
+    (side(a, b, c) > 0.0) != (side(a, b, d) > 0.0) && (side(c, d, a) > 0.0) != (side(c, d, b) > 0.0)
 }
 
 /// Moves blocks of the given heights that want to be centred at the given heights apart, in their order, inside
@@ -205,13 +235,24 @@ mod tests {
         let mut obstacles = Obstacles::new(Rect::new(0.0, 0.0, 100.0, 100.0));
         obstacles.take(Rect::new(0.0, 0.0, 50.0, 50.0));
         obstacles.line(vec![(60.0, 0.0), (60.0, 100.0)], 1.0);
-        let places = [(10.0, 10.0), (55.0, 10.0), (10.0, 70.0), (95.0, 95.0)];
-        let found =
-            obstacles.best(places.into_iter().map(|(x, y)| (Rect::new(x, y, 20.0, 10.0), 0.0)));
-        assert!(found.is_some_and(|spot| spot.covers == 0.0
-            && spot.rect.left == 10.0
-            && spot.rect.top == 70.0));
-        let outside = obstacles.best([(Rect::new(95.0, 95.0, 20.0, 10.0), 0.0)].into_iter());
-        assert!(outside.is_some_and(|spot| spot.rect.right == 100.0 && spot.rect.bottom == 100.0));
+        obstacles.yielding((0.0, 90.0), (100.0, 90.0));
+        let spot = |x, y| obstacles.weigh(Rect::new(x, y, 20.0, 10.0));
+        assert!(!spot(10.0, 70.0).covers && spot(10.0, 70.0).cost == 0.0);
+        assert!(spot(10.0, 10.0).covers && spot(10.0, 10.0).cost > spot(55.0, 60.0).cost);
+        assert!(spot(55.0, 60.0).covers);
+        // Near the line, not on it.
+        assert!(!spot(38.0, 60.0).covers && spot(38.0, 60.0).cost > 0.0);
+        assert!(!spot(10.0, 85.0).covers && spot(10.0, 85.0).cost > 0.0);
+        assert_eq!(spot(95.0, 95.0).rect, Rect::new(80.0, 90.0, 20.0, 10.0));
+    }
+
+    #[test]
+    fn a_leader_is_weighed_by_what_it_crosses() {
+        let mut obstacles = Obstacles::new(Rect::new(0.0, 0.0, 100.0, 100.0));
+        obstacles.line(vec![(60.0, 0.0), (60.0, 50.0), (70.0, 100.0)], 1.0);
+        obstacles.take(Rect::new(10.0, 10.0, 20.0, 20.0));
+        assert_eq!(obstacles.weigh_leader((40.0, 20.0), (55.0, 20.0)), 0.0);
+        assert_eq!(obstacles.weigh_leader((40.0, 20.0), (65.0, 20.0)), CROSSING.0);
+        assert_eq!(obstacles.weigh_leader((5.0, 20.0), (50.0, 20.0)), CROSSING.1);
     }
 }

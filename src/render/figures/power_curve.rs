@@ -7,7 +7,7 @@ use super::FigureError;
 use super::axes::{Axes, EDGE, Grid, rule};
 use super::canvas::{Align, Canvas, Frame, WIDTH};
 use super::checks;
-use super::labels::{Placed, around};
+use super::labels::{Place, Placed, around};
 use super::palette::{ACCENT, BAND, BESIDE, CEILING_DASH, GREY, INK, LABEL, PAPER, SMALL, WARM};
 use super::place::{Obstacles, Rect, spread};
 use super::text::Block;
@@ -17,6 +17,8 @@ use crate::report::figures::{Assumed, Curve, PowerCurve};
 const END_ROOM: f64 = 158.0;
 /// Widest label inside the figure.
 const INSIDE_ROOM: f64 = 190.0;
+/// What speaks against the label of the choice along its upright rule, away from its point.
+const FOOT: f64 = 45.0;
 /// Distance from the end of a curve to its label.
 const END_GAP: f64 = 20.0;
 
@@ -42,14 +44,16 @@ pub fn power_curve(data: &PowerCurve) -> Result<String, FigureError> {
     let frame = axes.frame;
     let curves: Vec<Vec<(f64, f64)>> =
         data.curves.iter().map(|curve| thin(&frame, &curve.points)).collect();
+    let labels = place_labels(&axes, data, &curves);
+    let gaps: Vec<Rect> = labels.iter().map(Placed::rect).collect();
     let mut canvas = Canvas::new(axes.height);
     draw_band(&mut canvas, &frame, data, &curves)?;
-    axes.grid(&mut canvas)?;
+    axes.grid(&mut canvas, &gaps)?;
     draw_rules(&mut canvas, &frame, data)?;
     draw_curves(&mut canvas, &frame, data, &curves)?;
     axes.draw(&mut canvas, Grid::Rules)?;
     draw_ends(&mut canvas, ends(data, blocks, &curves, &frame));
-    draw_labels(&mut canvas, &axes, data, &curves);
+    labels.iter().for_each(|label| label.draw(&mut canvas));
     Ok(canvas.finish(&data.description))
 }
 
@@ -178,10 +182,11 @@ fn draw_ends(canvas: &mut Canvas, ends: Vec<End>) {
     }
 }
 
-/// Labels among the curves: the choice first, then the ceiling, then the target.
-fn draw_labels(canvas: &mut Canvas, axes: &Axes, data: &PowerCurve, curves: &[Vec<(f64, f64)>]) {
+/// What labels among the curves keep clear of.
+fn obstacles(axes: &Axes, data: &PowerCurve, curves: &[Vec<(f64, f64)>]) -> Obstacles {
     let frame = axes.frame;
     let mut obstacles = Obstacles::new(axes.room());
+    axes.rules().for_each(|[from, to]| obstacles.yielding(from, to));
     for points in curves {
         obstacles.line(points.iter().map(|point| frame.point(*point)).collect(), 1.0);
     }
@@ -194,45 +199,61 @@ fn draw_labels(canvas: &mut Canvas, axes: &Axes, data: &PowerCurve, curves: &[Ve
         let limit = frame.px(ceiling.at);
         obstacles.line(vec![(limit, frame.top), (limit, frame.bottom)], 1.0);
     }
-    let mut labels = Vec::new();
-    let block = Block::new(&data.chosen.label, LABEL, true, INSIDE_ROOM, 3);
-    let places = around((x, y), &block);
-    labels.push(Placed::find(&mut obstacles, block, places, ACCENT, Some((x, y))));
-    if let Some(ceiling) = &data.ceiling {
-        let block = Block::new(&ceiling.label, LABEL, false, INSIDE_ROOM, 3);
-        let places = beside(frame.px(ceiling.at), &frame, &block);
-        labels.push(Placed::find(&mut obstacles, block, places, WARM, None));
-    }
-    let block = Block::new(&data.target.label, LABEL, false, 1.5 * INSIDE_ROOM, 1);
-    let places = along(level, &frame, &block);
-    labels.push(Placed::find(&mut obstacles, block, places, GREY, None));
-    for label in labels.iter().flatten() {
-        label.draw_veiled(canvas);
-    }
+    obstacles
 }
 
-/// Places beside an upright line, upper ones first.
-fn beside(line: f64, frame: &Frame, block: &Block) -> Vec<(Rect, f64)> {
+/// Labels among the curves: the choice first, then the ceiling, then the target.
+fn place_labels(axes: &Axes, data: &PowerCurve, curves: &[Vec<(f64, f64)>]) -> Vec<Placed> {
+    let frame = axes.frame;
+    let mut obstacles = obstacles(axes, data, curves);
+    let at = frame.point((data.chosen.x, data.chosen.y));
+    let by_choice = |block: Block| {
+        let mut places = around(at, &block);
+        places.extend(beside(at.0, (at.1 + 20.0, frame.bottom), &block, FOOT));
+        (block, places)
+    };
+    let settings = Block::settings(&data.chosen.label, LABEL, true, INSIDE_ROOM, 3);
+    let settings = settings.into_iter().map(by_choice).collect();
+    let mut labels = vec![Placed::find(&mut obstacles, settings, ACCENT)];
+    if let Some(ceiling) = &data.ceiling {
+        let by_ceiling = |block: Block| {
+            let places = beside(frame.px(ceiling.at), (frame.top, frame.bottom), &block, 0.0);
+            (block, places)
+        };
+        let settings = Block::settings(&ceiling.label, LABEL, false, INSIDE_ROOM, 3);
+        let settings = settings.into_iter().map(by_ceiling).collect();
+        labels.push(Placed::find(&mut obstacles, settings, WARM));
+    }
+    let block = Block::new(&data.target.label, LABEL, false, 1.5 * INSIDE_ROOM, 1);
+    let places = along(frame.py(data.target.at), &frame, &block);
+    labels.push(Placed::find(&mut obstacles, vec![(block, places)], GREY));
+    labels.into_iter().flatten().collect()
+}
+
+/// Places beside an upright line, upper ones first; `dislike` holds for all.
+fn beside(line: f64, (top, bottom): (f64, f64), block: &Block, dislike: f64) -> Vec<Place> {
     let (width, height) = (block.width(), block.height());
     let mut places = Vec::new();
     for step in 0..24 {
-        let top = frame.top + f64::from(step) * (frame.bottom - frame.top - height) / 24.0;
+        let top = top + f64::from(step) * (bottom - top - height) / 24.0;
         for left in [line + 8.0, line - 8.0 - width] {
-            places.push((Rect::new(left, top, width, height), f64::from(step)));
+            let rect = Rect::new(left, top, width, height);
+            places.push(Place { rect, dislike: dislike + f64::from(step), point: None });
         }
     }
     places
 }
 
 /// Places above and below a level line, from its left end to its right end.
-fn along(line: f64, frame: &Frame, block: &Block) -> Vec<(Rect, f64)> {
+fn along(line: f64, frame: &Frame, block: &Block) -> Vec<Place> {
     let (width, height) = (block.width(), block.height());
     let mut places = Vec::new();
     for step in 0..40 {
         let left = frame.left + 6.0 + f64::from(step) * (frame.right - frame.left - width) / 40.0;
         for (order, top) in [line - 7.0 - height, line + 7.0].into_iter().enumerate() {
+            let rect = Rect::new(left, top, width, height);
             let dislike = f64::from(step) + 0.5 * order as f64;
-            places.push((Rect::new(left, top, width, height), dislike));
+            places.push(Place { rect, dislike, point: None });
         }
     }
     places

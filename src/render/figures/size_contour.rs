@@ -7,8 +7,8 @@ use super::FigureError;
 use super::axes::{Axes, Grid, rule};
 use super::canvas::{Align, Canvas, Frame};
 use super::checks;
-use super::clip::{area_inside, line_inside, lines_outside};
-use super::labels::{Placed, around};
+use super::clip::{area_inside, line_inside, opened};
+use super::labels::{Place, Placed, around};
 use super::palette::{ACCENT, CEILING_DASH, DEEP, INK, LABEL, PAPER, SMALL, WARM, shade};
 use super::place::{Obstacles, Rect};
 use super::text::{Block, CAPITALS};
@@ -18,10 +18,8 @@ use crate::report::figures::{Level, SizeContour};
 const RIGHT: f64 = 16.0;
 /// Widest label inside the figure.
 const INSIDE_ROOM: f64 = 210.0;
-/// Widest size on a line.
-const SIZE_ROOM: f64 = 130.0;
-/// Space between a label and the ends of a line that it interrupts.
-const GAP: f64 = 3.5;
+/// What speaks against a further line of text in the label of a line.
+const FURTHER: f64 = 30.0;
 /// Half the width of the caps that end the limits.
 const CAP: f64 = 6.0;
 
@@ -29,9 +27,8 @@ const CAP: f64 = 6.0;
 struct Line<'a> {
     level: &'a Level,
     pieces: Vec<Vec<(f64, f64)>>,
-    block: Block,
-    /// Where the label stands.
-    label: Option<Rect>,
+    /// The label and where it stands.
+    label: Option<(Block, Rect)>,
 }
 
 /// Draws the units needed in a group over the difference to detect and the spread as an SVG picture.
@@ -55,27 +52,27 @@ pub fn size_contour(data: &SizeContour) -> Result<String, FigureError> {
     place_sizes(&mut lines, plot, &mut obstacles);
     let mut canvas = Canvas::new(axes.height);
     draw_bands(&mut canvas, &frame, data)?;
-    let gaps: Vec<Rect> =
-        lines.iter().filter_map(|line| line.label).chain(plan.iter().map(Placed::rect)).collect();
+    let gaps: Vec<Rect> = lines
+        .iter()
+        .filter_map(|line| line.label.as_ref().map(|(_, rect)| *rect))
+        .chain(plan.iter().map(Placed::rect))
+        .collect();
     draw_lines(&mut canvas, &frame, &lines, &gaps)?;
     draw_plan(&mut canvas, &frame, data)?;
     axes.draw(&mut canvas, Grid::Ticks)?;
     for line in &lines {
-        let Some(rect) = line.label else { continue };
+        let Some((block, rect)) = &line.label else { continue };
         let colour = if line.level.ceiling { WARM } else { DEEP };
-        canvas.text(&line.block, (rect.left, rect.top), Align::Left, colour);
+        canvas.text(block, (rect.left, rect.top), Align::Left, colour);
     }
-    for label in &plan {
-        label.draw(&mut canvas);
-    }
+    plan.iter().for_each(|label| label.draw(&mut canvas));
     Ok(canvas.finish(&data.description))
 }
 
 fn lines<'a>(data: &'a SizeContour, frame: &Frame, plot: Rect) -> Vec<Line<'a>> {
     let of = |level: &'a Level| {
         let points: Vec<_> = level.points.iter().map(|point| frame.point(*point)).collect();
-        let block = Block::new(&level.label, SMALL, level.ceiling, SIZE_ROOM, 1);
-        Line { level, pieces: line_inside(&points, plot), block, label: None }
+        Line { level, pieces: line_inside(&points, plot), label: None }
     };
     data.levels.iter().map(of).collect()
 }
@@ -108,26 +105,45 @@ fn limits(data: &SizeContour) -> Option<(f64, f64)> {
 /// Labels of the plan and of the limits.
 fn place_plan(data: &SizeContour, frame: &Frame, obstacles: &mut Obstacles) -> Vec<Placed> {
     let at = frame.point((data.plan.x, data.plan.y));
-    let block = Block::new(&data.plan.label, LABEL, true, INSIDE_ROOM, 3);
-    let places = around(at, &block);
-    let mut labels = vec![Placed::find(obstacles, block, places, DEEP, Some(at))];
+    let settings = Block::settings(&data.plan.label, LABEL, true, INSIDE_ROOM, 3);
+    let by_plan = |block: Block| {
+        let places = around(at, &block);
+        (block, places)
+    };
+    let settings = settings.into_iter().map(by_plan).collect();
+    let mut labels = vec![Placed::find(obstacles, settings, DEEP)];
     if let (Some(given), Some((low, high))) = (&data.limits, limits(data)) {
-        let block = Block::new(&given.label, SMALL, false, INSIDE_ROOM, 3);
-        let (width, height) = (block.width(), block.height());
-        let mut places = Vec::new();
-        for step in 0..20 {
-            let part = f64::from(step) / 20.0;
-            for (end, down) in [(frame.py(high), 1.0), (frame.py(low), -1.0)] {
-                let middle = end + down * part * (frame.py(low) - frame.py(high)) / 2.0;
-                for left in [at.0 + CAP + 6.0, at.0 - CAP - 6.0 - width] {
-                    places
-                        .push((Rect::new(left, middle - height / 2.0, width, height), part * 20.0));
-                }
-            }
-        }
-        labels.push(Placed::find(obstacles, block, places, INK, None));
+        let (low, high) = (frame.py(low), frame.py(high));
+        let by_limits = |block: Block| {
+            let places = by_bar(at.0, (high, low), &block);
+            (block, places)
+        };
+        let settings = Block::settings(&given.label, SMALL, false, INSIDE_ROOM, 3);
+        let settings = settings.into_iter().map(by_limits).collect();
+        labels.push(Placed::find(obstacles, settings, INK));
     }
     labels.into_iter().flatten().collect()
+}
+
+/// Places along the bar of the limits, from its ends to its middle, then farther off with a leader to an end.
+fn by_bar(x: f64, (top, bottom): (f64, f64), block: &Block) -> Vec<Place> {
+    let (width, height) = (block.width(), block.height());
+    let mut places = Vec::new();
+    for step in 0..20 {
+        let part = f64::from(step) / 20.0;
+        for (end, down) in [(top, 1.0), (bottom, -1.0)] {
+            let middle = end + down * part * (bottom - top) / 2.0;
+            for left in [x + CAP + 6.0, x - CAP - 6.0 - width] {
+                let rect = Rect::new(left, middle - height / 2.0, width, height);
+                places.push(Place { rect, dislike: part * 20.0, point: None });
+            }
+        }
+    }
+    for end in [top, bottom] {
+        let distant = around((x, end), block).into_iter();
+        places.extend(distant.map(|place| Place { dislike: place.dislike + 10.0, ..place }));
+    }
+    places
 }
 
 /// Puts the size on each line, the ceiling's first: towards the upper end, where the lines are farthest apart.
@@ -135,28 +151,47 @@ fn place_sizes(lines: &mut [Line<'_>], plot: Rect, obstacles: &mut Obstacles) {
     let mut order: Vec<&mut Line<'_>> = lines.iter_mut().collect();
     order.sort_by_key(|line| !line.level.ceiling);
     for line in order {
-        let (width, height) = (line.block.width(), line.block.size * CAPITALS);
-        let mut best: Option<(f64, Rect)> = None;
-        for step in 1..40 {
-            let part = f64::from(step) / 40.0;
-            let Some((x, y)) = along(&line.pieces, part) else { continue };
-            let rect = Rect::new(x - width / 2.0, y - height / 2.0, width, height);
-            let outside = if rect.grown(4.0).within(plot) { 0.0 } else { 1e4 };
-            // The line itself runs through its label: that much is no fault.
-            let clear = rect.grown(Obstacles::AIR);
-            let weight = if line.level.ceiling { 1.0 } else { 0.4 };
-            let own: f64 = line.pieces.iter().map(|piece| weight * clear.length_of(piece)).sum();
-            let covers = (obstacles.covers(rect) - own).max(0.0);
-            let cost = 10.0 * covers + 30.0 * (part - 0.82).abs() + outside;
-            if outside == 0.0 && best.is_none_or(|(least, _)| cost < least) {
-                best = Some((cost, rect));
-            }
-        }
-        if let Some((_, rect)) = best {
+        let settings =
+            Block::settings(&line.level.label, SMALL, line.level.ceiling, INSIDE_ROOM, 2);
+        let places = settings.into_iter().filter_map(|block| {
+            let (cost, rect) = place_size(line, &block, plot, obstacles)?;
+            Some((cost + FURTHER * (block.lines.len() as f64 - 1.0), block, rect))
+        });
+        if let Some((_, block, rect)) = places.min_by(|(a, ..), (b, ..)| a.total_cmp(b)) {
             obstacles.take(rect);
-            line.label = Some(rect);
+            line.label = Some((block, rect));
         }
     }
+}
+
+/// The best place for a label on its line inside the plot, and what speaks against it.
+fn place_size(
+    line: &Line<'_>,
+    block: &Block,
+    plot: Rect,
+    obstacles: &Obstacles,
+) -> Option<(f64, Rect)> {
+    let further = block.lines.len().saturating_sub(1) as f64 * block.leading();
+    let (width, height) = (block.width(), block.size * CAPITALS + further);
+    let mut best: Option<(f64, Rect)> = None;
+    for step in 1..40 {
+        let part = f64::from(step) / 40.0;
+        let Some((x, y)) = along(&line.pieces, part) else { continue };
+        let rect = Rect::new(x - width / 2.0, y - height / 2.0, width, height);
+        if !rect.grown(4.0).within(plot) {
+            continue;
+        }
+        // The line itself runs through its label: that much is no fault.
+        let clear = rect.grown(Obstacles::AIR);
+        let weight = if line.level.ceiling { 1.0 } else { 0.4 };
+        let own: f64 = line.pieces.iter().map(|piece| weight * clear.length_of(piece)).sum();
+        let covers = (obstacles.covers(rect) - own).max(0.0);
+        let cost = 10.0 * covers + 30.0 * (part - 0.82).abs();
+        if best.is_none_or(|(least, _)| cost < least) {
+            best = Some((cost, rect));
+        }
+    }
+    best
 }
 
 /// The point at a part of the length of a line, its pieces taken together.
@@ -215,9 +250,7 @@ fn draw_lines(
             true => (WARM, 20, CEILING_DASH),
             false => (ACCENT, 10, ""),
         };
-        let pieces = gaps
-            .iter()
-            .fold(line.pieces.clone(), |pieces, gap| lines_outside(&pieces, gap.grown(GAP)));
+        let pieces = opened(line.pieces.clone(), gaps);
         let attributes = format!(" fill=\"none\" stroke-linejoin=\"round\"{dash}");
         canvas.layer(frame, &attributes, |area| {
             for piece in pieces {

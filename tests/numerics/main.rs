@@ -1,0 +1,9 @@
+//! Tests of the special functions and of the central and noncentral distributions.
+
+mod battery;
+#[path = "../../examples/tabulate/functions.rs"]
+mod functions;
+mod inverses;
+mod limits;
+mod published;
+mod tables;

@@ -5,10 +5,11 @@
 use std::path::Path;
 use std::time::{Duration, Instant};
 
+use sufficit::designs::Point;
 use sufficit::record::documents;
 use sufficit::render::FigureStore;
 use sufficit::render::pdf::{self, FontSet, Job};
-use sufficit::solver::Silent;
+use sufficit::solver::{Silent, size_grid, smallest_sizes};
 use sufficit::spec::{self, InputFile};
 
 const ROUNDS: usize = 25;
@@ -78,7 +79,17 @@ fn main() {
         let solved = median(|_| {
             documents::solve(&load(), &Silent).expect("solvable");
         });
+        let loaded = load();
+        let plan = documents::solve(&loaded, &Silent).expect("solvable");
+        let pressed = median(|_| drop(documents::press(&loaded, &plan).expect("renders")));
+        let press = documents::press(&loaded, &plan).expect("renders");
+        let sourced = median(|_| drop(press.typst().expect("renders")));
+        let store = FigureStore { folder: Some("figures".into()), pixels: false };
+        let marked = median(|_| drop(press.markdown(&store).expect("renders")));
         println!("{example}: {pages} pages");
+        println!("  sentences and figures        {pressed:>12.2?}");
+        println!("  Typst source                 {sourced:>12.2?}");
+        println!("  Markdown                     {marked:>12.2?}");
         println!("  typesetting alone            {typeset:>12.2?}");
         println!("  YAML to PDF and Markdown     {whole:>12.2?}");
         println!(
@@ -91,7 +102,30 @@ fn main() {
             simulated.saturating_sub(solved)
         );
     }
+    grid();
     println!("peak memory of this process: {} MB (at most 200)", peak_memory());
+}
+
+/// A grid of exact two-sample sizes on one core, and the same cells solved one by one.
+fn grid() {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("examples/axolotl.yaml");
+    let (spec, folder) = InputFile::open_spec(&path).expect("the example exists");
+    let loaded = spec::load(spec, &folder).expect("valid");
+    let problem = loaded.study.experiments[0].problem.as_ref();
+    let planned = problem.planned();
+    let steps = |at: f64| (0..100).map(|i| at * (0.5 + f64::from(i) / 100.0)).collect::<Vec<_>>();
+    let (effects, spreads) = (steps(planned.effect), steps(planned.nuisance));
+    let together = median(|_| drop(size_grid(problem, &effects, &spreads).expect("solvable")));
+    let apart = median(|_| {
+        for effect in &effects {
+            for nuisance in &spreads {
+                let at = Point { effect: *effect, nuisance: *nuisance };
+                smallest_sizes(problem, at).expect("solvable");
+            }
+        }
+    });
+    println!("100 x 100 grid of exact sizes    {together:>10.2?} (at most 50 ms)");
+    println!("  the same one by one            {apart:>10.2?}");
 }
 
 /// Peak resident memory in megabytes, where the system tells.

@@ -138,7 +138,7 @@ impl fmt::Display for Grouped {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let digits = self.0.to_string();
         for (position, digit) in digits.chars().enumerate() {
-            if position > 0 && (digits.len() - position) % 3 == 0 {
+            if position > 0 && (digits.len() - position).is_multiple_of(3) {
                 f.write_str(" ")?;
             }
             write!(f, "{digit}")?;

@@ -1,6 +1,7 @@
 //! The templates: embedded, one environment for each face and language, undefined variables refused.
 
-use std::sync::{Arc, Mutex};
+use std::collections::HashMap;
+use std::sync::{Arc, Mutex, OnceLock};
 
 use include_dir::{Dir, include_dir};
 use minijinja::syntax::SyntaxConfig;
@@ -60,23 +61,7 @@ impl Templates {
         locale: &'static Locale,
         bibliography: &Arc<Bibliography>,
     ) -> Result<Self, RenderError> {
-        let mut environment = Environment::new();
-        environment.set_undefined_behavior(UndefinedBehavior::Strict);
-        let syntax = SyntaxConfig::builder()
-            .trim_blocks(true)
-            .lstrip_blocks(true)
-            .keep_trailing_newline(true)
-            .build()?;
-        environment.set_syntax(syntax);
-        environment.set_fuel(Some(FUEL));
-        environment.set_auto_escape_callback(move |_| AutoEscape::Custom(face.name().into()));
-        environment.set_formatter(move |out, _, value| {
-            let text = shown(face, locale, value)?;
-            out.write_str(&text).map_err(Error::from)
-        });
-        add_files(&mut environment, face, locale.tag)?;
-        add_numbers(&mut environment, face, locale);
-        add_text(&mut environment);
+        let mut environment = base(face, locale)?;
         add_citations(&mut environment, bibliography);
         Ok(Self { environment })
     }
@@ -90,6 +75,41 @@ impl Templates {
         let template = self.environment.get_template(name)?;
         Ok(template.render(context)?)
     }
+}
+
+/// The environment of a face and language without what belongs to one document, parsed once for the process.
+fn base(face: Face, locale: &'static Locale) -> Result<Environment<'static>, RenderError> {
+    type Known = Mutex<HashMap<(Face, &'static str), Environment<'static>>>;
+    static KNOWN: OnceLock<Known> = OnceLock::new();
+    let known = KNOWN.get_or_init(Known::default);
+    let mut known = known.lock().unwrap_or_else(std::sync::PoisonError::into_inner);
+    if let Some(environment) = known.get(&(face, locale.tag)) {
+        return Ok(environment.clone());
+    }
+    let environment = parse(face, locale)?;
+    known.insert((face, locale.tag), environment.clone());
+    Ok(environment)
+}
+
+fn parse(face: Face, locale: &'static Locale) -> Result<Environment<'static>, RenderError> {
+    let mut environment = Environment::new();
+    environment.set_undefined_behavior(UndefinedBehavior::Strict);
+    let syntax = SyntaxConfig::builder()
+        .trim_blocks(true)
+        .lstrip_blocks(true)
+        .keep_trailing_newline(true)
+        .build()?;
+    environment.set_syntax(syntax);
+    environment.set_fuel(Some(FUEL));
+    environment.set_auto_escape_callback(move |_| AutoEscape::Custom(face.name().into()));
+    environment.set_formatter(move |out, _, value| {
+        let text = shown(face, locale, value)?;
+        out.write_str(&text).map_err(Error::from)
+    });
+    add_files(&mut environment, face, locale.tag)?;
+    add_numbers(&mut environment, face, locale);
+    add_text(&mut environment);
+    Ok(environment)
 }
 
 /// What a value looks like in the output. A bare fraction has no precision rule, so it is refused.

@@ -39,7 +39,7 @@ fn critical_values_match_the_reference_table() {
 }
 
 #[test]
-fn rare_shapes_match_sums_in_many_digits() {
+fn rare_shapes_match_panels_over_the_spread() {
     verify(&read("multivariate"), |row| {
         if row.text("kind") != "range" {
             return vec![];

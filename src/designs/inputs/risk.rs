@@ -17,6 +17,13 @@ pub enum Multiplicity {
     Bonferroni,
     /// Each comparison is tested at `1 - (1 - alpha)^(1/m)` for `m` comparisons; `alpha` holds for the family.
     Sidak,
+    /// Step-down: the largest statistic is tested as by Bonferroni, the next ones less strictly; `alpha` holds for
+    /// the family, and the size is the one that the first step guarantees.
+    Holm,
+    /// All pairs by the studentised range (Tukey, or Tukey-Kramer for unequal groups); `alpha` holds for the family.
+    Tukey,
+    /// Each group against the control by the joint distribution (Dunnett); `alpha` holds for the family.
+    Dunnett,
 }
 
 /// Error rates.

@@ -27,8 +27,8 @@ use std::f64::consts::TAU;
 ///
 /// # Accuracy
 ///
-/// Probabilities and both tails to 1e-12 of their own size down to 1e-250 (`tests/numerics_solvers/discrete.rs`,
-/// against integer arithmetic and `tests/reference/binomial.csv`).
+/// Probabilities and both tails to 1e-12 of their own size down to 1e-250 (`tests/numerics_solvers/binomials.rs`,
+/// `tests/reference/binomial.csv`).
 ///
 /// # Sources
 ///

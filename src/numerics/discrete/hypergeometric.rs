@@ -31,7 +31,7 @@ const NEGLIGIBLE: f64 = 1e-18;
 /// # Accuracy
 ///
 /// Probabilities, both tails and the mean to 1e-12 of their own size down to 1e-250
-/// (`tests/numerics_solvers/discrete.rs`, against integer arithmetic and `tests/reference/hypergeometric.csv`).
+/// (`tests/numerics_solvers/binomials.rs`, `tests/reference/hypergeometric.csv`).
 ///
 /// # Sources
 ///

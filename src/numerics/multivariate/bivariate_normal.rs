@@ -30,7 +30,7 @@ const FAR: f64 = 39.0;
 /// # Accuracy
 ///
 /// Orthants to 1e-12 of their own size down to 1e-200, rectangles to 1e-14 absolute, for every correlation
-/// (`tests/numerics_solvers/multivariate.rs`).
+/// (`tests/reference/bivariate_normal.csv`, `tests/numerics_solvers/bivariate.rs`).
 ///
 /// # Sources
 ///

@@ -24,7 +24,7 @@ use crate::numerics::special::normal::normal_cdf;
 /// # Accuracy
 ///
 /// 1e-14 absolute (`tests/reference/owen_q.csv` through [`two_one_sided_power`]; against the noncentral t at infinite
-/// `b` in `tests/numerics_solvers/multivariate.rs`).
+/// `b` in `tests/numerics_solvers/equivalence.rs`).
 ///
 /// # Errors
 ///

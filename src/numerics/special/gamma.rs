@@ -112,9 +112,12 @@ pub(crate) fn stirling_remainder(a: f64) -> f64 {
 /// Saddle-point form of Loader (2000), "Fast and accurate computation of binomial probabilities":
 /// `exp(a (ln(x/a) - x/a + 1) - s(a)) / sqrt(2πa)` with the Stirling remainder `s`.
 pub(crate) fn poisson_density(a: f64, x: f64) -> Scaled {
+    if a == 0.0 {
+        return Scaled { factor: 1.0, exponent: -x };
+    }
     if a < 1.0 {
         if x == 0.0 {
-            return Scaled::plain(if a == 0.0 { 1.0 } else { 0.0 });
+            return Scaled::ZERO;
         }
         return Scaled { factor: 1.0 / libm::tgamma(a + 1.0), exponent: a * libm::log(x) - x };
     }

@@ -64,6 +64,9 @@ pub(crate) fn mixture_tails(family: impl Family, weights: Weights, below_mean: b
     }
 }
 
+/// Up to this position of the peak the ends of the sums are found step by step.
+const NARROW: f64 = 40.0;
+
 /// `Σ p_j L_j`.
 pub(crate) fn lower_sum(family: impl Family, weights: Weights) -> Scaled {
     let Weights { q, w } = weights;
@@ -71,18 +74,7 @@ pub(crate) fn lower_sum(family: impl Family, weights: Weights) -> Scaled {
     if peak > WIDE {
         return smooth_sum(family, weights, peak, |j| family.tails(j).lower_scaled());
     }
-    let anchor = libm::floor(peak);
-    let mut g = 1.0;
-    let mut j = anchor;
-    loop {
-        let (top, bottom) = family.growth(j);
-        let next = g * (w * top / (bottom * (q + j + 1.0)));
-        if next.is_nan() || next <= NEGLIGIBLE {
-            break;
-        }
-        g = next;
-        j += 1.0;
-    }
+    let (anchor, mut g, mut j) = upper_edge(family, weights, peak);
     let mut ratio = family.lower_ratio(j);
     let mut sum = g * ratio;
     let mut previous = sum;
@@ -103,6 +95,34 @@ pub(crate) fn lower_sum(family: impl Family, weights: Weights) -> Scaled {
     at_anchor(family, weights, anchor).times(sum)
 }
 
+/// An index above which the terms of the lower sum are negligible, after an anchor and the size of the product there
+/// over its size at the anchor.
+fn upper_edge(family: impl Family, weights: Weights, peak: f64) -> (f64, f64, f64) {
+    let Weights { q, w } = weights;
+    if peak > NARROW {
+        // They fall off like Poisson probabilities at most: P(J > peak + t) <= exp(-t² / (2 (v + t/3))).
+        let edge = libm::ceil(peak + 13.3 + (177.0 + 80.0 * variance(family, q, peak)).sqrt());
+        return (edge, 1.0, edge);
+    }
+    // Near 0 the anchor is 0 itself, where the weight costs no logarithm.
+    let (mut g, mut j, mut largest) = (1.0_f64, 0.0, 1.0_f64);
+    loop {
+        let (top, bottom) = family.growth(j);
+        let next = g * (w * top / (bottom * (q + j + 1.0)));
+        if next.is_nan() || next <= NEGLIGIBLE * largest {
+            return (0.0, g, j);
+        }
+        g = next;
+        largest = largest.max(g);
+        j += 1.0;
+    }
+}
+
+/// Variance of the bell that `p_j D_j` forms around its peak.
+fn variance(family: impl Family, q: f64, peak: f64) -> f64 {
+    if peak > 0.0 { 1.0 / (1.0 / (q + peak) + family.curvature(peak)) } else { 0.0 }
+}
+
 /// `Σ p_j U_j`.
 pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
     let Weights { q, w } = weights;
@@ -110,18 +130,11 @@ pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
     if peak > WIDE {
         return smooth_sum(family, weights, peak, |j| family.tails(j).upper_scaled());
     }
-    let anchor = libm::floor(peak);
+    // The terms fall off downward at least like a Gaussian curve.
+    let reach = if peak > NARROW { 9.0 * variance(family, q, peak).sqrt() + 3.0 } else { peak };
+    let start = libm::floor((peak - reach).max(0.0));
     let mut g = 1.0;
-    let mut j = anchor;
-    while j >= 1.0 {
-        let (top, bottom) = family.growth(j - 1.0);
-        let next = g * ((q + j) * bottom / (w * top));
-        if next.is_nan() || next <= NEGLIGIBLE {
-            break;
-        }
-        g = next;
-        j -= 1.0;
-    }
+    let mut j = start;
     let mut ratio = family.upper_ratio(j);
     let mut sum = g * ratio;
     let mut previous = sum;
@@ -140,7 +153,7 @@ pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
         }
         previous = term;
     }
-    at_anchor(family, weights, anchor).times(sum)
+    at_anchor(family, weights, start).times(sum)
 }
 
 /// `Σ p_j (a + j) D_j`: the density of the mixture times its argument.

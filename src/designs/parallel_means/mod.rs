@@ -10,12 +10,15 @@
 //! ```
 //!
 //! where `t` is the upper `α'/sides` quantile of Student's t with `ν` degrees of freedom and `α'` the level of one
-//! comparison: `α`, `α/m` (Bonferroni) or `1 − (1 − α)^(1/m)` (Šidák) for `m` comparisons. Both rejection regions
-//! count, as they do when the test is run.
+//! comparison: `α`, `α/m` (Bonferroni, and the first step of Holm) or `1 − (1 − α)^(1/m)` (Šidák) for `m`
+//! comparisons; or the critical value of the studentised range over `√2` (Tukey, all pairs), or of Dunnett's joint
+//! distribution (against a control). Both rejection regions count, as they do when the test is run.
 //!
-//! Sources: Cohen (1988), chapter 2; Guenther (1981); Šidák (1967).
+//! Sources: Cohen (1988), chapter 2; Guenther (1981); Šidák (1967); Dunn (1961); Holm (1979); Tukey (1953); Kramer
+//! (1956); Hayter (1984); Dunnett (1955).
 
-use std::sync::Arc;
+mod family;
+mod trial;
 
 use schemars::{JsonSchema, Schema, SchemaGenerator};
 use serde::Deserialize;
@@ -30,11 +33,11 @@ use super::problem::{
     Trial,
 };
 use super::{Card, Fault, Path, StudyDesign, Tables};
-use crate::numerics::{
-    self, Continuous, NoncentralT, StudentT, normal_cdf, normal_upper_quantile, random::Stream,
-    roots,
-};
+use crate::numerics::multivariate::ShiftedComparisons;
+use crate::numerics::{self, Continuous, NoncentralT, normal_cdf, normal_upper_quantile, roots};
 use crate::quantities::{LARGEST_SIZE, Outcome, Risk, Scale, Sides};
+use family::{Family, joint_sides};
+use trial::{Comparison, MeansTrial};
 
 static CARD: Card = Card {
     id: "parallel-means",
@@ -43,7 +46,16 @@ static CARD: Card = Card {
     scale: Scale::Continuous,
     aim: "detect-difference",
     analysis: "two-sample-t",
-    sources: &["cohen-1988", "guenther-1981", "sidak-1967"],
+    sources: &[
+        "cohen-1988",
+        "guenther-1981",
+        "sidak-1967",
+        "dunn-1961",
+        "holm-1979",
+        "tukey-1953",
+        "hayter-1984",
+        "dunnett-1955",
+    ],
 };
 
 /// The registry entry.
@@ -117,6 +129,20 @@ fn contradiction(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option
             .help("drop `multiplicity`")
         });
     }
+    let misplaced = match (risk.multiplicity, parallel.compare) {
+        (Multiplicity::Tukey, Compare::AgainstControl) => Some((
+            "Tukey’s procedure is made for all pairs, but each group is compared with a control",
+            "choose `dunnett`, or `compare: all-pairs`",
+        )),
+        (Multiplicity::Dunnett, Compare::AllPairs) => Some((
+            "Dunnett’s procedure is made for comparisons with a control, but all pairs are compared",
+            "choose `tukey`, or name the `control` and `compare: against-control`",
+        )),
+        _ => None,
+    };
+    if let Some((reason, help)) = misplaced {
+        return Some(Fault::value(Path::of("risk.multiplicity"), reason).help(help));
+    }
     let undirected = risk.risk.sides == Sides::One && parallel.compare == Compare::AllPairs;
     undirected.then(|| {
         Fault::value(
@@ -144,20 +170,14 @@ impl Means {
         self.parallel.pairs.len()
     }
 
-    /// Level of one comparison.
-    fn alpha_each(&self) -> f64 {
-        let alpha = self.risk.risk.alpha.get();
-        let count = self.comparisons() as f64;
-        match self.risk.multiplicity {
-            _ if self.comparisons() == 1 => alpha,
-            Multiplicity::EachAtAlpha => alpha,
-            Multiplicity::Bonferroni => alpha / count,
-            Multiplicity::Sidak => -libm::expm1(libm::log1p(-alpha) / count),
+    fn family(&self) -> Family<'_> {
+        Family {
+            multiplicity: self.risk.multiplicity,
+            alpha: self.risk.risk.alpha.get(),
+            sides: self.risk.risk.sides,
+            groups: self.parallel.groups.len(),
+            pairs: &self.parallel.pairs,
         }
-    }
-
-    fn tail(&self) -> f64 {
-        self.alpha_each() / self.risk.risk.sides.count()
     }
 
     fn degrees_of_freedom(&self, sizes: &Sizes) -> f64 {
@@ -166,7 +186,7 @@ impl Means {
     }
 
     fn critical(&self, sizes: &Sizes) -> numerics::Result<f64> {
-        StudentT::new(self.degrees_of_freedom(sizes))?.upper_quantile(self.tail())
+        self.family().critical(self.degrees_of_freedom(sizes), &as_numbers(sizes))
     }
 
     /// `√(1/n_i + 1/n_j)` of a pair.
@@ -211,7 +231,8 @@ impl Means {
     }
 
     fn normal_quantiles(&self) -> numerics::Result<(f64, f64)> {
-        let z_alpha = normal_upper_quantile(self.tail())?;
+        let weights: Vec<f64> = self.parallel.groups.iter().map(|g| g.weight).collect();
+        let z_alpha = self.family().critical(f64::INFINITY, &weights)?;
         let z_beta = normal_upper_quantile(1.0 - self.risk.risk.power.get())?;
         Ok((z_alpha, z_beta))
     }
@@ -351,7 +372,7 @@ impl Problem for Means {
         Ok(Box::new(MeansTrial {
             sizes: sizes.per_group.iter().map(|n| *n as usize).collect(),
             df: self.degrees_of_freedom(sizes),
-            critical: self.critical(sizes)?,
+            critical: self.family().steps(self.degrees_of_freedom(sizes), &as_numbers(sizes))?,
             two_sided: self.risk.risk.sides == Sides::Two,
             comparisons: comparisons.collect::<Vec<_>>().into(),
             weakest,
@@ -380,10 +401,15 @@ impl Problem for Means {
             }
         }
         if self.comparisons() > 1 {
+            let joint = match self.parallel.compare {
+                Compare::AllPairs => ("tukey", Multiplicity::Tukey),
+                Compare::AgainstControl => ("dunnett", Multiplicity::Dunnett),
+            };
             for (id, other) in [
                 ("each-at-alpha", Multiplicity::EachAtAlpha),
                 ("bonferroni", Multiplicity::Bonferroni),
                 ("sidak", Multiplicity::Sidak),
+                joint,
             ] {
                 let mut problem = self.clone();
                 problem.risk.multiplicity = other;
@@ -441,13 +467,14 @@ impl Problem for Means {
             }));
         }
         let weakest = self.weakest_pair(sizes);
+        let joint = self.joint_power(sizes, fixed.critical)?;
         let facts = json!({
             "compare": self.parallel.compare,
             "allocation_why": self.parallel.allocation_why,
             "balanced": self.parallel.is_balanced(),
             "multiplicity": self.risk.multiplicity,
             "risk": self.risk,
-            "alpha_each": self.alpha_each(),
+            "alpha_each": self.family().level(),
             "rising": self.effect.planned.value > 0.0,
             "degrees_of_freedom": fixed.df,
             "critical": fixed.critical,
@@ -456,6 +483,8 @@ impl Problem for Means {
             "noncentrality": at.effect / (at.nuisance * self.weakest_factor(sizes)),
             "relative_factor_squared": self.relative_factor() * self.relative_factor(),
             "comparisons": comparisons,
+            "any_power": joint.map(|joint| joint.0),
+            "all_power": joint.map(|joint| joint.1),
         });
         Ok(match facts {
             serde_json::Value::Object(map) => map,
@@ -464,82 +493,38 @@ impl Problem for Means {
     }
 }
 
+/// Sizes of the groups as numbers.
+fn as_numbers(sizes: &Sizes) -> Vec<f64> {
+    sizes.per_group.iter().map(|n| *n as f64).collect()
+}
+
 impl Means {
+    /// Power to find at least one, and all, of the differences from a control when every group differs from it; the
+    /// single-step procedures have it in closed form.
+    fn joint_power(&self, sizes: &Sizes, critical: f64) -> numerics::Result<Option<(f64, f64)>> {
+        let single_step = self.risk.multiplicity != Multiplicity::Holm;
+        let control = self.parallel.compare == Compare::AgainstControl;
+        if self.comparisons() == 1 || !control || !single_step {
+            return Ok(None);
+        }
+        let at = self.planned();
+        let size = |g: usize| sizes.per_group.get(g).map_or(f64::NAN, |n| *n as f64);
+        let statistics: Vec<(f64, f64)> = self
+            .parallel
+            .pairs
+            .iter()
+            .map(|&(c, i)| {
+                let loading = (size(i) / (size(i) + size(c))).sqrt();
+                (loading, at.effect / (at.nuisance * self.pair_factor(sizes, (c, i))))
+            })
+            .collect();
+        let sides = joint_sides(self.risk.risk.sides);
+        let joint = ShiftedComparisons::new(&statistics, sides, self.degrees_of_freedom(sizes))?;
+        Ok(Some((joint.any_exceeds(critical)?, joint.all_exceed(critical)?)))
+    }
+
     fn formula(&self, id: &'static str, source: &'static str, step: f64) -> Option<Rival> {
         let sizes = self.rounded_up(step)?;
         Some(Rival { id, source: Some(source), answer: RivalAnswer::Formula { step, sizes } })
-    }
-}
-
-/// One comparison of a simulated study, in units of the standard deviation.
-#[derive(Debug, Clone, Copy)]
-struct Comparison {
-    first: usize,
-    second: usize,
-    factor: f64,
-    shift: f64,
-}
-
-/// A simulated study: standard normal raw data, the t statistics of every comparison.
-#[derive(Debug)]
-struct MeansTrial {
-    sizes: Vec<usize>,
-    df: f64,
-    critical: f64,
-    two_sided: bool,
-    comparisons: Arc<[Comparison]>,
-    weakest: usize,
-}
-
-impl Trial for MeansTrial {
-    fn comparisons(&self) -> usize {
-        self.comparisons.len()
-    }
-
-    fn weakest(&self) -> usize {
-        self.weakest
-    }
-
-    fn differing(&self) -> Vec<bool> {
-        self.comparisons.iter().map(|c| c.shift != 0.0).collect()
-    }
-
-    fn values(&self) -> usize {
-        self.sizes.iter().sum()
-    }
-
-    fn run(
-        &self,
-        stream: &mut Stream,
-        scratch: &mut Vec<f64>,
-        planned: &mut [bool],
-        null: &mut [bool],
-    ) {
-        let values = self.values();
-        scratch.resize(values + self.sizes.len(), 0.0);
-        let (data, means) = scratch.split_at_mut(values);
-        stream.fill_normal(data);
-        let mut squares = 0.0;
-        let mut rest: &[f64] = data;
-        for (size, mean) in self.sizes.iter().zip(means.iter_mut()) {
-            let (own, others) = rest.split_at(*size);
-            rest = others;
-            let (mut sum, mut own_squares) = (0.0, 0.0);
-            for value in own {
-                sum += value;
-                own_squares += value * value;
-            }
-            *mean = sum / *size as f64;
-            squares += own_squares - sum * *mean;
-        }
-        let pooled = (squares / self.df).sqrt();
-        for ((comparison, planned), null) in self.comparisons.iter().zip(planned).zip(null) {
-            let mean = |g: usize| means.get(g).copied().unwrap_or(0.0);
-            let difference = mean(comparison.second) - mean(comparison.first);
-            let limit = self.critical * pooled * comparison.factor;
-            let rejects = |d: f64| if self.two_sided { d.abs() > limit } else { d > limit };
-            *planned = rejects(difference + comparison.shift);
-            *null = rejects(difference);
-        }
     }
 }

@@ -154,6 +154,15 @@ pub trait AtSizes: Send + Sync {
     /// A numerical failure, none for legal values inside the documented range.
     fn power(&self, at: Point) -> numerics::Result<f64>;
 
+    /// Whether the exact power reaches a target; a design overrides it where the answer needs less than the number.
+    ///
+    /// # Errors
+    ///
+    /// As [`Self::power`].
+    fn reaches(&self, at: Point, target: f64) -> numerics::Result<bool> {
+        Ok(self.power(at)? >= target)
+    }
+
     /// The effect at which the exact power equals `power`, for each nuisance value.
     ///
     /// # Errors

@@ -56,7 +56,7 @@ pub const SPREAD: Range = Range {
     low_included: true,
     high: 1e100,
     high_included: true,
-    advice: "must be a positive number in the unit of the outcome; values that never vary need no study",
+    advice: "must be a positive number in the unit of the outcome, from 1e-100 to 1e100; values that never vary need no study",
 };
 
 /// A difference to detect, by its size.
@@ -66,7 +66,7 @@ pub const DIFFERENCE: Range = Range {
     low_included: true,
     high: 1e100,
     high_included: true,
-    advice: "must not be 0: a study cannot be sized to detect no difference",
+    advice: "must not be 0, and from 1e-100 to 1e100 in size: a study cannot be sized to detect no difference",
 };
 
 /// Weight of a group in the allocation.

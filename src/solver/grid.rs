@@ -50,21 +50,22 @@ struct Fixed<'a> {
 }
 
 impl Fixed<'_> {
-    fn power(&mut self, step: u64, at: Point) -> Result<f64, NumericsError> {
+    fn reaches(&mut self, step: u64, at: Point, target: f64) -> Result<bool, NumericsError> {
         if let Some(known) = self.known.get(&step) {
-            return known.power(at);
+            return known.reaches(at, target);
         }
         let out = NumericsError::TargetOutOfReach { largest: step, best: f64::NAN };
         let fixed = self.problem.at_sizes(&self.problem.sizes(step).ok_or(out)?)?;
-        let power = fixed.power(at);
+        let reached = fixed.reaches(at, target);
         self.known.insert(step, fixed);
-        power
+        reached
     }
 
     fn smallest(&mut self, at: Point, hint: Option<u64>, largest: u64) -> Result<u64, SolverError> {
         let target = self.problem.risk().power.get();
         let lowest = self.problem.smallest_step();
-        integer_search::smallest_rising(lowest, largest, hint, target, |step| self.power(step, at))
+        let reaches = |step| self.reaches(step, at, target);
+        integer_search::smallest_monotone(lowest, largest, hint, reaches)
             .map(|found| found.n)
             .map_err(|error| match error {
                 NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,

@@ -5,7 +5,7 @@ use super::{problems, sound, with};
 fn values(file: &str, keys: &str) -> Vec<f64> {
     let text = with("spread: 0.8", &format!("spread: {{file: data.csv, {keys}}}"));
     let loaded = sound(&text, &[("data.csv", file)]);
-    match &loaded.study.experiments[0].problem.spread().origin {
+    match &loaded.study.experiments[0].problem.spread().expect("a spread").origin {
         sufficit::designs::inputs::SpreadOrigin::Column { values, .. } => values.clone(),
         other => panic!("{other:?}"),
     }

@@ -89,7 +89,7 @@ fn a_full_spec_is_read_whole() {
         experiment.further_units.iter().map(|f| (f.purpose, f.count, f.individuals)).collect();
     assert_eq!(further, [(FurtherPurpose::Training, 4, true), (FurtherPurpose::Spare, 1, false)]);
     assert_eq!(experiment.safeguards.missing_data.as_deref(), Some("complete cases"));
-    let spread = experiment.problem.spread();
+    let spread = experiment.problem.spread().expect("a spread");
     // Mean and standard deviation of 2.9, 3.8 and 3.1, by hand: 9.8/3 and the root of 0.67/3.
     let expected = (0.67_f64 / 3.0).sqrt();
     assert!((spread.sd / expected - 1.0).abs() < 1e-14, "{}", spread.sd);
@@ -122,7 +122,7 @@ fn what_is_left_out_is_marked_as_such() {
     assert_eq!(experiment.losses.fraction(), 0.0);
     assert!(experiment.ceiling.is_none() && experiment.further_units.is_empty());
     assert_eq!(loaded.inputs.files, []);
-    assert_eq!(experiment.problem.spread().df, None);
+    assert_eq!(experiment.problem.spread().expect("a spread").df, None);
 }
 
 #[test]
@@ -152,7 +152,7 @@ fn numbers_may_be_written_in_any_yaml_notation() {
     {
         let text = with("spread: 0.8", &format!("spread: {written}"));
         assert_eq!(
-            sound(&text, &[]).study.experiments[0].problem.spread().sd,
+            sound(&text, &[]).study.experiments[0].problem.spread().expect("a spread").sd,
             expected,
             "{written}"
         );

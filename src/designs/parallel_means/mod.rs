@@ -291,6 +291,20 @@ impl AtSizes for MeansAtSizes {
         self.power_at(at.effect / (at.nuisance * self.factor))
     }
 
+    /// The far rejection region needs a look only where it can decide: it has no more than `Φ(−λ)`, since a negative
+    /// statistic takes a negative numerator.
+    fn reaches(&self, at: Point, target: f64) -> numerics::Result<bool> {
+        let noncentrality = at.effect / (at.nuisance * self.factor);
+        let near = NoncentralT::new(self.df, noncentrality)?.sf(self.critical)?;
+        if near >= target || self.sides == Sides::One {
+            return Ok(near >= target);
+        }
+        if near + normal_cdf(-noncentrality) < target {
+            return Ok(false);
+        }
+        Ok(self.power_at(noncentrality)? >= target)
+    }
+
     /// The power depends on the ratio of effect to spread alone, so one root serves every spread.
     fn detectable(&self, nuisances: &[f64], power: f64) -> numerics::Result<Vec<f64>> {
         let noncentrality = self.noncentrality_for(power)?;

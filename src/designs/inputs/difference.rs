@@ -5,7 +5,7 @@ use serde::Deserialize;
 
 use super::assumed::Assumed;
 use crate::designs::{Effect, EffectBasis, Fault, Path};
-use crate::quantities::{Assumption, DIFFERENCE, Grounds};
+use crate::quantities::{Assumption, DIFFERENCE, Grounds, Written};
 
 /// What a single `difference` stands for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, JsonSchema)]
@@ -68,7 +68,7 @@ pub fn read_difference(keys: &DifferenceKeys) -> Result<Effect, Vec<Fault>> {
         if let Err(out) = DIFFERENCE.check(assumed.value().abs()) {
             let path = at.key(key).join(&Path::of(assumed.step()));
             faults.push(
-                Fault::value(path, format!("the difference is {}", assumed.value()))
+                Fault::value(path, format!("the difference is {}", Written(assumed.value())))
                     .help(format!("it {}", out.range.advice)),
             );
         }

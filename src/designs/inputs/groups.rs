@@ -6,7 +6,7 @@ use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 
 use crate::designs::{Fault, Group, Path, Sizes};
-use crate::quantities::{Decimal, LARGEST_SIZE, WEIGHT};
+use crate::quantities::{Decimal, LARGEST_SIZE, WEIGHT, Written};
 
 /// Most groups one experiment may have; more comparisons than these make no readable report.
 const MOST_GROUPS: usize = 20;
@@ -164,8 +164,9 @@ fn read_groups(keys: &[GroupKeys], at: &Path, faults: &mut Vec<Fault>) -> Vec<Gr
             GroupKeys::Weighted { name, weight } => {
                 let weight = weight.unwrap_or(1.0);
                 if WEIGHT.check(weight).is_err() {
+                    let reason = format!("the weight is {}", Written(weight));
                     faults.push(
-                        Fault::value(path.key("weight"), format!("the weight is {weight}"))
+                        Fault::value(path.key("weight"), reason)
                             .help(format!("it {}", WEIGHT.advice)),
                     );
                 }

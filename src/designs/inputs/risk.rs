@@ -5,7 +5,7 @@ use serde::{Deserialize, Serialize};
 
 use super::assumed::Assumed;
 use crate::designs::{Fault, Path};
-use crate::quantities::{ALPHA, Alpha, Assumption, Grounds, POWER, Power, Risk, Sides};
+use crate::quantities::{ALPHA, Alpha, Assumption, Grounds, POWER, Power, Risk, Sides, Written};
 
 /// What protects the family when several comparisons are made.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize, Deserialize, JsonSchema)]
@@ -82,14 +82,14 @@ pub fn read_risk(keys: &RiskKeys) -> Result<StatedRisk, Vec<Fault>> {
     };
     let checked_alpha = Alpha::new(alpha.value);
     if checked_alpha.is_err() {
-        let reason = format!("the significance level is {}", alpha.value);
+        let reason = format!("the significance level is {}", Written(alpha.value));
         refuse("alpha", &keys.alpha, reason, &format!("it {}", ALPHA.advice));
     }
     let checked_power = Power::new(power.value);
     if checked_power.is_err() || (checked_alpha.is_ok() && power.value <= alpha.value) {
         let key =
             if keys.power.is_some() { ("power", &keys.power) } else { ("alpha", &keys.alpha) };
-        let reason = format!("the power is {}", power.value);
+        let reason = format!("the power is {}", Written(power.value));
         refuse(key.0, key.1, reason, &format!("it {}", POWER.advice));
     }
     match (checked_alpha, checked_power, faults.is_empty()) {

@@ -7,7 +7,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::designs::{Fault, Path, Tables};
 use crate::numerics::{self, ChiSquared, Continuous};
-use crate::quantities::{Grounds, SPREAD};
+use crate::quantities::{Grounds, SPREAD, Written};
 
 /// The standard deviation between experimental units within a group: a bare number, or a mapping.
 #[derive(Debug, Clone, PartialEq, Deserialize, JsonSchema)]
@@ -205,14 +205,14 @@ fn stated_df(told: &SpreadTold, at: &Path) -> Result<Option<f64>, Fault> {
         (Some(_), Some(_)) => Err(Fault::key(at.key("n"), "both `df` and `n` are given")
             .help("keep `n` for one group, or `df` for a value pooled over groups")),
         (Some(df), None) if !(df.is_finite() && (1.0..=1e9).contains(&df)) => {
-            Err(Fault::value(at.key("df"), format!("the degrees of freedom are {df}"))
+            Err(Fault::value(at.key("df"), format!("the degrees of freedom are {}", Written(df)))
                 .help("they must be at least 1: units minus groups"))
         }
         (None, Some(n)) if !(2..=1_000_000_000).contains(&n) => {
             let noun = if n == 1 { "unit" } else { "units" };
             let reason = format!("the standard deviation comes from {n} {noun}");
             Err(Fault::value(at.key("n"), reason).help(
-                "it takes at least 2 units to see any spread, and no more than 1000000000 are read",
+                "it takes at least 2 units to see any spread, and no more than 1 000 000 000 are read",
             ))
         }
         (df, n) => Ok(df.or(n.map(|n| n as f64 - 1.0))),
@@ -257,7 +257,7 @@ fn strangers(told: &SpreadTold, at: &Path, refused: &[&str], form: &str) -> Resu
 fn checked_sd(sd: f64, at: &Path) -> Result<f64, Vec<Fault>> {
     SPREAD.check(sd).map_err(|out| {
         vec![
-            Fault::value(at.clone(), format!("the standard deviation is {sd}"))
+            Fault::value(at.clone(), format!("the standard deviation is {}", Written(sd)))
                 .help(format!("it {}", out.range.advice)),
         ]
     })
@@ -291,7 +291,7 @@ fn mean_and_sd(values: &[f64], at: &Path) -> Result<(f64, f64), Vec<Fault>> {
     let sd = variance.max(0.0).sqrt();
     if SPREAD.check(sd).is_err() {
         return refuse(
-            format!("the values have a standard deviation of {sd}"),
+            format!("the values have a standard deviation of {}", Written(sd)),
             "values that never vary give no planning value; are these raw measurements of different units?",
         );
     }

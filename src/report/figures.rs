@@ -5,6 +5,8 @@
 
 use serde::Serialize;
 
+use super::locale::superscript;
+
 /// A mark on an axis with the text beside it.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 #[serde(rename_all = "kebab-case")]
@@ -105,22 +107,6 @@ fn split_unit(title: &str) -> Option<(&str, &str)> {
         }
     }
     None
-}
-
-fn superscript(digit: char) -> char {
-    match digit {
-        '-' => '⁻',
-        '0' => '⁰',
-        '1' => '¹',
-        '2' => '²',
-        '3' => '³',
-        '4' => '⁴',
-        '5' => '⁵',
-        '6' => '⁶',
-        '7' => '⁷',
-        '8' => '⁸',
-        _ => '⁹',
-    }
 }
 
 /// A straight line across the figure at one value, with its label.

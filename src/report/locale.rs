@@ -176,7 +176,8 @@ pub fn decimals_for(value: f64, digits: usize) -> usize {
     decimals.clamp(0.0, 12.0) as usize
 }
 
-fn superscript(digit: char) -> char {
+/// A digit or a minus sign raised, for powers of ten.
+pub(super) fn superscript(digit: char) -> char {
     match digit {
         '-' => '⁻',
         '0' => '⁰',

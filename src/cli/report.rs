@@ -22,7 +22,7 @@ pub(super) struct Arguments {
     /// The spec, or `-` for standard input.
     spec: PathBuf,
     /// File to write; its extension chooses the format: .pdf, .md, .txt (the statement), .json (the plan), .typ (the
-    /// Typst source). May be repeated. Without it: the PDF and the Markdown, in the current folder. `-` is standard
+    /// main Typst source, to read). May be repeated. Without it: the PDF and the Markdown, in the current folder. `-` is standard
     /// output.
     #[arg(short, long = "output", value_name = "FILE")]
     output: Vec<PathBuf>,

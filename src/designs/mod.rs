@@ -8,6 +8,9 @@
 
 mod fault;
 pub mod inputs;
+mod one_mean;
+mod one_sample;
+mod paired_means;
 mod parallel_means;
 mod problem;
 
@@ -64,4 +67,5 @@ pub trait StudyDesign: Sync {
 
 /// All designs, in the order in which they are listed. The first that serves a structure, scale and aim is the
 /// default analysis of that combination.
-pub static REGISTRY: &[&dyn StudyDesign] = &[&parallel_means::ParallelMeans];
+pub static REGISTRY: &[&dyn StudyDesign] =
+    &[&parallel_means::ParallelMeans, &one_mean::OneMean, &paired_means::PairedMeans];

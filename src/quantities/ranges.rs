@@ -69,6 +69,16 @@ pub const DIFFERENCE: Range = Range {
     advice: "must not be 0, and from 1e-100 to 1e100 in size: a study cannot be sized to detect no difference",
 };
 
+/// A correlation.
+pub const CORRELATION: Range = Range {
+    name: "the correlation",
+    low: -1.0,
+    low_included: false,
+    high: 1.0,
+    high_included: false,
+    advice: "must lie between -1 and 1, both excluded",
+};
+
 /// Weight of a group in the allocation.
 pub const WEIGHT: Range = Range {
     name: "the allocation weight",

@@ -9,7 +9,7 @@ use crate::solver::{self, Progress, SolverError};
 use crate::spec::{InputFile, Inputs, Loaded};
 
 /// Name under which the plan is attached to a PDF.
-pub const PLAN_NAME: &str = "plan.json";
+pub const PLAN_NAME: &str = "sufficit-plan.json";
 
 /// Hashes of everything that was read.
 pub fn fingerprints(inputs: &Inputs) -> Fingerprints {

@@ -106,7 +106,7 @@ pub fn typst_string(text: &str) -> String {
 fn markdown(text: &str) -> String {
     let mut escaped = String::with_capacity(text.len() + 8);
     let mut previous = None;
-    let mut only_digits = true;
+    let mut short_first_word = true;
     let mut characters = text.chars().peekable();
     while let Some(character) = characters.next() {
         let next = characters.peek().copied();
@@ -116,11 +116,12 @@ fn markdown(text: &str) -> String {
             | '~' | '|' | '&' | '"' => true,
             '\'' => !(within_word(previous) && within_word(next)),
             '+' | ':' | '=' | '%' if first => true,
-            ':' => next == Some('/'),
+            ':' => short_first_word || next == Some('/'),
             '-' => first || previous == Some('-') || next == Some('-'),
             '!' => next == Some('['),
-            '(' => previous == Some(']'),
-            '.' | ')' if only_digits && !first && next.is_none_or(char::is_whitespace) => true,
+            '(' => first || previous == Some(']'),
+            // A short first word before a dot or a bracket would open a list.
+            '.' | ')' if short_first_word && !first && next.is_none_or(char::is_whitespace) => true,
             '.' => previous == Some('.') || next == Some('.') || previous == Some('w'),
             _ => false,
         };
@@ -128,7 +129,7 @@ fn markdown(text: &str) -> String {
             escaped.push('\\');
         }
         escaped.push(if matches!(character, '\n' | '\r' | '\t') { ' ' } else { character });
-        only_digits &= character.is_ascii_digit();
+        short_first_word &= character.is_alphanumeric() || (first && character == '(');
         previous = Some(character);
     }
     escaped
@@ -160,6 +161,10 @@ mod tests {
         );
         assert_eq!(Face::Markdown.escape("1986. A year"), "1986\\. A year");
         assert_eq!(Face::Markdown.escape("- item"), "\\- item");
+        assert_eq!(Face::Markdown.escape("(1) Does it?"), "\\(1\\) Does it?");
+        assert_eq!(Face::Markdown.escape("a) one"), "a\\) one");
+        assert_eq!(Face::Markdown.escape("Table: x"), "Table\\: x");
+        assert_eq!(Face::Markdown.escape("0.5 mm"), "0.5 mm");
     }
 
     #[test]

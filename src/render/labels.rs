@@ -72,7 +72,10 @@ fn power_curve(
     let first = data.steps.first().map_or(0.0, |n| *n as f64);
     let last = data.steps.last().map_or(1.0, |n| *n as f64);
     let ceiling = match &plan.ceiling {
-        Some(ceiling) if ceiling.outlook.is_some() => {
+        Some(ceiling)
+            if ceiling.outlook.is_some()
+                && (first..=last).contains(&(ceiling.remain.step as f64)) =>
+        {
             Some(Rule { at: ceiling.remain.step as f64, label: labels.text("ceiling")? })
         }
         _ => None,

@@ -159,6 +159,7 @@ fn add_numbers(environment: &mut Environment<'static>, face: Face, locale: &'sta
     environment.add_filter("significant", move |value: f64, digits: usize| {
         locale.significant(value, digits)
     });
+    environment.add_filter("share", move |value: f64| locale.share(value));
     environment.add_filter("percent", move |value: f64| locale.percent(value));
     environment.add_filter("power", move |value: f64| locale.power(value));
     environment.add_filter("complement", move |value: f64| locale.complement(value));
@@ -182,6 +183,7 @@ fn add_text(environment: &mut Environment<'static>) {
     environment.add_filter("yaml", move |text: String| quoted(&text));
     environment
         .add_filter("yaml_markup", move |text: String| quoted(&Face::Markdown.escape(&text)));
+    environment.add_filter("shell", |text: String| shell_word(&text));
     environment.add_filter("code", |text: String| Value::from_safe_string(code_span(&text)));
     environment.add_filter("destination", |path: String| {
         let mut escaped = path.replace('\\', "\\\\");
@@ -198,6 +200,13 @@ fn add_text(environment: &mut Environment<'static>) {
         let trimmed = text.to_string().trim().to_owned();
         if text.is_safe() { Value::from_safe_string(trimmed) } else { Value::from(trimmed) }
     });
+}
+
+/// A word as a POSIX shell must be given it, and no option whatever it begins with.
+fn shell_word(text: &str) -> String {
+    let plain = |c: char| c.is_ascii_alphanumeric() || "._-/".contains(c);
+    let text = if text.starts_with('-') { format!("./{text}") } else { text.to_owned() };
+    if text.chars().all(plain) { text } else { format!("'{}'", text.replace('\'', "'\\''")) }
 }
 
 /// A code span whose fence is longer than any run of backticks inside.

@@ -92,7 +92,7 @@ const REDUCTION: [Item; 2] = [
 const DELTA2: [Item; 7] = [
     ("DELTA2", "1", Topic::Outcome, "question"),
     ("DELTA2", "2", Topic::ErrorRates, "design"),
-    ("DELTA2", "3b", Topic::Target, "inputs"),
+    ("DELTA2", "3b", Topic::Target, "calculation"),
     ("DELTA2", "4", Topic::Allocation, "design"),
     ("DELTA2", "5", Topic::Adjustments, "calculation"),
     ("DELTA2", "6", Topic::Basis, "inputs"),
@@ -148,12 +148,20 @@ fn is_open(experiment: &ExperimentPlan, topic: Topic) -> bool {
         || experiment.effect.planned.grounds.is_open();
     let spread = experiment.spread.as_ref().is_some_and(|spread| spread.grounds.is_open());
     let fact = |key: &str| experiment.analysis.get(key);
+    let further = fact("further_inputs").and_then(serde_json::Value::as_array);
+    let unsupported = |input: &serde_json::Value| {
+        input
+            .pointer("/grounds")
+            .and_then(serde_json::Value::as_object)
+            .is_none_or(|g| g.is_empty())
+    };
+    let spread = spread || further.is_some_and(|inputs| inputs.iter().any(unsupported));
     let unequal = fact("balanced").is_some_and(|balanced| balanced == false);
     let losses = !experiment.losses.stated;
     let safeguards = &experiment.safeguards;
     match topic {
         Topic::Basis => basis,
-        Topic::SpreadSource => spread,
+        Topic::SpreadSource => basis || spread,
         Topic::Adjustments => losses,
         Topic::Calculation | Topic::Assumptions => basis || spread || losses,
         Topic::Allocation => {

@@ -75,17 +75,17 @@ impl Locale {
         self.dressed(&value.to_string(), false)
     }
 
-    /// A stated fraction in percent, as short as it can be: 5 %, 2.5 %.
+    /// A stated fraction in percent, with all the digits that its author wrote: 5 %, 2.5 %, 1.25 %.
     pub fn percent(&self, value: f64) -> String {
-        let points = value * 100.0;
-        let text = if points == 0.0 || points >= 0.1 {
-            let text = self.fixed(points, 1);
-            let whole = text.strip_suffix('0').and_then(|t| t.strip_suffix(self.decimal));
-            whole.map_or(text.clone(), str::to_owned)
-        } else {
-            self.significant(points, 2)
-        };
-        format!("{text}{THIN}%")
+        // The shortest decimal of the fraction, its point moved by two places; 0.07 * 100 is not 7 in binary.
+        let places = format!("{value}").split_once('.').map_or(0, |(_, part)| part.len());
+        let text = format!("{:.*}", places.saturating_sub(2), value * 100.0);
+        format!("{}{THIN}%", self.dressed(&text, false))
+    }
+
+    /// A computed fraction in percent with three significant digits.
+    pub fn share(&self, value: f64) -> String {
+        format!("{}{THIN}%", self.significant(value * 100.0, 3))
     }
 
     /// A computed power in percent with one decimal, rounded with the caution of [`Self::probability`].
@@ -109,12 +109,15 @@ impl Locale {
         if printed >= 1.0 {
             return format!("<{THIN}0{}001", self.decimal);
         }
+        if printed <= 0.0 {
+            return format!(">{THIN}0{}999", self.decimal);
+        }
         self.fixed(1.0 - printed, 3)
     }
 
     fn cautious(&self, value: f64, scale: f64, decimals: usize) -> String {
         let nearest = (value * 1000.0).round();
-        if nearest >= 1000.0 && value < 1.0 {
+        if nearest >= 1000.0 {
             return format!(">{THIN}{}", self.fixed(0.999 * scale, decimals));
         }
         let flattering = nearest > value * 1000.0 * (1.0 + 1e-12) && nearest % 10.0 == 0.0;
@@ -220,7 +223,19 @@ mod tests {
         assert_eq!(en().power(0.999_999), ">\u{202f}99.9\u{202f}%");
         assert_eq!(en().power(0.799_96), "<\u{202f}80.0\u{202f}%");
         assert_eq!(en().complement(0.830_35), "0.170");
-        assert_eq!(en().percent(0.05), "5\u{202f}%");
+        assert_eq!(en().power(1.0), ">\u{202f}99.9\u{202f}%");
+        for (value, text) in [
+            (0.05, "5"),
+            (0.0, "0"),
+            (0.07, "7"),
+            (0.0125, "1.25"),
+            (0.001, "0.1"),
+            (0.0333, "3.33"),
+            (0.875, "87.5"),
+            (0.00001, "0.001"),
+        ] {
+            assert_eq!(en().percent(value), format!("{text}\u{202f}%"));
+        }
         assert_eq!(en().power(0.9104), "91.0\u{202f}%");
     }
 }

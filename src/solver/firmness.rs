@@ -15,6 +15,9 @@ const CONVENTIONAL_SPAN: (f64, f64) = (0.8, 1.25);
 /// Effects of the table, relative to the planned one.
 const TABLE_EFFECTS: [f64; 5] = [0.7, 0.85, 1.0, 1.15, 1.3];
 
+/// A ceiling farther off than so many times the chosen size is left out of the figures, which would show little else.
+const FARTHEST_CEILING: u64 = 3;
+
 /// Points of a power curve.
 const CURVE_POINTS: u64 = 48;
 
@@ -92,7 +95,9 @@ fn curves(
     ceiling: Option<&CeilingPlan>,
 ) -> Result<Curves, SolverError> {
     let first = problem.smallest_step();
-    let shown = sizes.step.max(ceiling.map_or(0, |c| c.remain.step)).max(first + 4);
+    let roomy = sizes.step.saturating_mul(FARTHEST_CEILING);
+    let limit = ceiling.map(|c| c.remain.step).filter(|step| *step <= roomy);
+    let shown = sizes.step.max(limit.unwrap_or(0)).max(first + 4);
     let last = shown.saturating_mul(2);
     let stride = (last - first).div_ceil(CURVE_POINTS).max(1);
     let mut steps: Vec<u64> =
@@ -128,7 +133,8 @@ fn contours(
     let mut steps: Vec<(u64, bool)> = ladder(problem.smallest_step(), sizes.step);
     if let Some(ceiling) = ceiling {
         let step = ceiling.remain.step;
-        let shown = ceiling.outlook.is_some();
+        let shown =
+            ceiling.outlook.is_some() && step <= sizes.step.saturating_mul(FARTHEST_CEILING);
         steps.retain(|(other, _)| !shown || *other != step);
         steps.extend(shown.then_some((step, true)));
     }

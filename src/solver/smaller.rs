@@ -12,13 +12,6 @@ pub(super) fn ceiling(
 ) -> Result<Option<CeilingPlan>, SolverError> {
     let Some(ceiling) = &experiment.ceiling else { return Ok(None) };
     let problem = experiment.problem.as_ref();
-    let start = start_under(problem, ceiling.limit);
-    let remain = remaining(experiment, &start)?;
-    let smallest_step = problem.smallest_step();
-    let outlook = match remain.step >= smallest_step && problem.is_possible(&remain) {
-        true => Some(outlook(problem, &start, &remain)?),
-        false => None,
-    };
     let asked = needed
         .per_group
         .iter()
@@ -27,6 +20,19 @@ pub(super) fn ceiling(
     let fits = match ceiling.limit {
         CeilingLimit::PerGroup(limit) => asked.iter().all(|n| *n <= limit),
         CeilingLimit::Total(limit) => asked.iter().sum::<u64>() <= limit,
+    };
+    let mut start = start_under(problem, ceiling.limit);
+    let asked_total = asked.iter().sum::<u64>();
+    if fits && start.total < asked_total {
+        // Losses are rounded up group by group, so what is asked for need not lie in the allocation itself.
+        let step = asked.iter().copied().max().unwrap_or(0);
+        start = Sizes { step, per_group: asked, total: asked_total };
+    }
+    let remain = remaining(experiment, &start)?;
+    let smallest_step = problem.smallest_step();
+    let outlook = match remain.step >= smallest_step && problem.is_possible(&remain) {
+        true => Some(outlook(problem, &start, &remain)?),
+        false => None,
     };
     Ok(Some(CeilingPlan { ceiling: ceiling.clone(), start, remain, fits, outlook, smallest_step }))
 }

@@ -2,7 +2,8 @@
 
 use std::path::Path;
 
-use sufficit::designs::{Point, Problem, REGISTRY};
+use sufficit::designs::{Card, Point, Problem, REGISTRY};
+use sufficit::numerics::random::Stream;
 use sufficit::solver::{size_grid, smallest_sizes};
 
 use crate::support::read;
@@ -27,8 +28,16 @@ fn problems() -> Vec<(String, Box<dyn Problem>)> {
             if experiment["spread"].get("file").is_some() {
                 continue;
             }
-            let structure = experiment["design"]["structure"].as_str().expect("text");
-            let design = REGISTRY.iter().find(|d| d.card().structure == structure).expect("known");
+            let key = |value: &serde_yaml::Value| value.as_str().map(str::to_owned);
+            let (structure, aim) =
+                (key(&experiment["design"]["structure"]), key(&experiment["aim"]));
+            let analysis = experiment.get("analysis").and_then(key);
+            let serves = |card: &Card| {
+                Some(card.structure) == structure.as_deref()
+                    && Some(card.aim) == aim.as_deref()
+                    && analysis.as_deref().is_none_or(|name| name == card.analysis)
+            };
+            let design = REGISTRY.iter().find(|d| serves(d.card())).expect("known");
             let yaml = serde_yaml::to_string(experiment).expect("text");
             let name =
                 format!("{} in {}", experiment["id"].as_str().unwrap_or("?"), path.display());
@@ -114,5 +123,33 @@ fn a_grid_gives_what_single_searches_give() {
                 assert_eq!(*cell, Some(found.sizes.step), "{name}");
             }
         }
+    }
+}
+
+/// The simulated analysis against the exact power and the wanted error rate, for every example: 20 000 studies each
+/// with a fixed seed, so the outcome never changes; a distance beyond 4 standard errors would have a chance of
+/// 6 in 100 000.
+#[test]
+fn simulated_power_and_false_alarms_are_the_exact_ones() {
+    for (name, problem) in problems() {
+        let found = smallest_sizes(problem.as_ref(), problem.planned()).expect("within reach");
+        let trial = problem.trial(&found.sizes, problem.planned()).expect("prepared");
+        let count = trial.comparisons();
+        let (mut planned, mut null) = (vec![false; count], vec![false; count]);
+        let mut stream = Stream::new([7; 32], "test of simulated studies", 0);
+        let (studies, mut hits, mut alarms) = (20_000, 0, 0);
+        let mut scratch = Vec::new();
+        for _ in 0..studies {
+            trial.run(&mut stream, &mut scratch, &mut planned, &mut null);
+            hits += u32::from(planned[trial.weakest()]);
+            alarms += u32::from(null.iter().any(|rejected| *rejected));
+        }
+        let share = |count: u32| f64::from(count) / f64::from(studies);
+        let error = |p: f64| (p * (1.0 - p) / f64::from(studies)).sqrt();
+        let distance = (share(hits) - found.power) / error(found.power);
+        assert!(distance.abs() < 4.0, "{name}: {distance}");
+        let alpha = problem.risk().alpha.get();
+        assert!(share(alarms) < alpha + 4.0 * error(alpha), "{name}: {}", share(alarms));
+        assert!(share(alarms) > 0.5 * alpha, "{name}: {}", share(alarms));
     }
 }

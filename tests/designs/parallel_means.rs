@@ -288,7 +288,7 @@ fn joint_power_against_a_control_agrees() {
     assert!(compared >= 3, "only {compared} rows were compared");
 }
 
-/// Holm's steps reject all that Bonferroni rejects; here the simulated power of the whole procedure is compared.
+/// Holm's first step is Bonferroni's, and joint distributions never ask for more than inequalities.
 #[test]
 fn holm_has_the_number_of_bonferroni_and_tukey_needs_no_more() {
     let step = |multiplicity: &str| {

@@ -4,6 +4,7 @@ mod battery;
 #[path = "../../examples/tabulate/functions.rs"]
 mod functions;
 mod inverses;
+mod library;
 mod limits;
 mod published;
 mod tables;

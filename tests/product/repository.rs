@@ -69,6 +69,15 @@ fn mentioned(source: &str) -> Vec<String> {
 }
 
 #[test]
+fn every_room_has_its_rule() {
+    for entry in std::fs::read_dir(repository("src")).expect("readable") {
+        let path = entry.expect("readable").path();
+        let name = path.file_name().expect("a name").to_string_lossy().into_owned();
+        assert!(path.is_file() || rooms().contains_key(name.as_str()), "{name} has no rule");
+    }
+}
+
+#[test]
 fn dependencies_point_one_way() {
     for (room, allowed) in rooms() {
         let files = rust_files(&repository("src").join(room));

@@ -4,6 +4,7 @@ use schemars::JsonSchema;
 use serde::Deserialize;
 
 use super::assumed::Assumed;
+use super::spread::Spread;
 use crate::designs::{Effect, EffectBasis, Fault, Path};
 use crate::quantities::{Assumption, DIFFERENCE, Grounds, Written};
 
@@ -86,6 +87,21 @@ pub fn read_difference(keys: &DifferenceKeys) -> Result<Effect, Vec<Fault>> {
             Fault::key(at, "no difference is stated")
                 .help("give `difference`, or `smallest-that-matters` and `realistic`"),
         ]
+    })
+}
+
+/// Most standard deviations that a difference may span.
+const WIDEST: f64 = 1e6;
+
+/// A difference so many standard deviations wide that one of the two is surely in another unit.
+pub fn out_of_proportion(effect: &Effect, spread: &Spread) -> Option<Fault> {
+    let ratio = effect.planned.value.abs() / spread.sd;
+    (ratio > WIDEST).then(|| {
+        Fault::key(
+            Path::of("effect"),
+            "the difference is more than a million standard deviations wide",
+        )
+        .help("give both in the unit of the outcome")
     })
 }
 

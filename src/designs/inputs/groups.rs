@@ -9,7 +9,7 @@ use crate::designs::{Fault, Group, Path, Sizes};
 use crate::quantities::{Decimal, LARGEST_SIZE, WEIGHT, Written};
 
 /// Most groups one experiment may have; more comparisons than these make no readable report.
-const MOST_GROUPS: usize = 20;
+const MOST_GROUPS: usize = 12;
 
 /// A group: its name, or a mapping with its name and its weight in the allocation.
 #[derive(Debug, Clone, PartialEq, Deserialize, JsonSchema)]

@@ -8,7 +8,7 @@ mod risk;
 mod spread;
 
 pub use assumed::Assumed;
-pub use difference::{BasisKey, DifferenceKeys, PlanFor, read_difference};
+pub use difference::{BasisKey, DifferenceKeys, PlanFor, out_of_proportion, read_difference};
 pub use groups::{Compare, GroupKeys, Parallel, ParallelKeys, read_parallel};
 pub use risk::{Multiplicity, RiskKeys, StatedRisk, read_risk};
 pub use spread::{Cell, Spread, SpreadKeys, SpreadOrigin, SpreadTold, read_spread};

@@ -85,6 +85,11 @@ pub enum SpreadOrigin {
         /// Number of units, where given.
         n: Option<u64>,
     },
+    /// Computed by the design from other numbers that the author stated.
+    Derived {
+        /// Number of units from which all of them were estimated, where given.
+        n: Option<u64>,
+    },
     /// Computed from values in the spec.
     Values {
         /// The values.

@@ -26,7 +26,7 @@ use serde_json::json;
 
 use super::inputs::{
     Compare, DifferenceKeys, Multiplicity, Parallel, ParallelKeys, RiskKeys, Spread, SpreadKeys,
-    StatedRisk, read_difference, read_parallel, read_risk, read_spread,
+    StatedRisk, out_of_proportion, read_difference, read_parallel, read_risk, read_spread,
 };
 use super::problem::{
     AtSizes, Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
@@ -101,6 +101,9 @@ impl StudyDesign for ParallelMeans {
         let mut faults = Vec::new();
         if let (Ok(parallel), Ok(risk)) = (&parallel, &risk) {
             faults.extend(contradiction(parallel, risk, keys.risk.multiplicity.is_some()));
+        }
+        if let (Ok(effect), Ok(spread)) = (&effect, &spread) {
+            faults.extend(out_of_proportion(effect, spread));
         }
         match (parallel, effect, spread, risk) {
             (Ok(parallel), Ok(effect), Ok(spread), Ok(risk)) if faults.is_empty() => {
@@ -258,17 +261,33 @@ impl Means {
     }
 }
 
-/// The t tests at fixed sizes.
+/// Two equal groups with one comparison: the neighbour without pairing of designs that pair.
+pub(super) fn two_equal_groups(
+    names: &[String; 2],
+    effect: Effect,
+    spread: Spread,
+    risk: StatedRisk,
+) -> Box<dyn Problem> {
+    let group = |name: &String| Group { name: name.clone(), weight: 1.0, control: false };
+    let groups = names.iter().map(group).collect();
+    let (compare, pairs) = (Compare::AllPairs, vec![(0, 1)]);
+    let parallel = Parallel { groups, compare, pairs, allocation_why: None };
+    Box::new(Means { parallel, effect, spread, risk, covariates: 0 })
+}
+
+/// A t test at fixed sizes.
 #[derive(Debug, Clone, Copy)]
-struct MeansAtSizes {
-    df: f64,
-    critical: f64,
-    factor: f64,
-    sides: Sides,
+pub(super) struct MeansAtSizes {
+    pub(super) df: f64,
+    pub(super) critical: f64,
+    /// Standard error of the tested mean or difference, in units of the standard deviation.
+    pub(super) factor: f64,
+    pub(super) sides: Sides,
 }
 
 impl MeansAtSizes {
-    fn power_at(&self, noncentrality: f64) -> numerics::Result<f64> {
+    /// Exact power at a noncentrality.
+    pub(super) fn power_at(&self, noncentrality: f64) -> numerics::Result<f64> {
         let t = NoncentralT::new(self.df, noncentrality)?;
         let upper = t.sf(self.critical)?;
         Ok(match self.sides {

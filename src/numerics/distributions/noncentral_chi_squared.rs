@@ -31,8 +31,9 @@ use crate::numerics::special::poisson_mixture::{Weights, density_sum, mixture_ta
 ///
 /// # Sources
 ///
-/// Fisher (1928), Proceedings of the Royal Society A 121, 654-673. Summed in the direction of growing tails, from where the
-/// terms begin to matter; beyond 3000 terms as an integral over real `j`.
+/// Fisher (1928), Proceedings of the Royal Society A 121, 654-673. Near the mean, summed from `j = 0`; elsewhere in the
+/// direction of growing tails, from where the terms begin to matter, and for large noncentralities as an integral over
+/// real `j`.
 ///
 /// # Example
 ///
@@ -128,7 +129,7 @@ fn tails(a: f64, w: f64, x: f64) -> Tails {
         let root = x.sqrt() - w.sqrt();
         Tails::Upper(Scaled { factor: 1.0, exponent: -root * root })
     } else {
-        mixture_tails(GammaFamily { a, x }, Weights { q: 0.0, w }, x < a + w)
+        mixture_tails(GammaFamily { a, x }, w, x < a + w)
     }
 }
 

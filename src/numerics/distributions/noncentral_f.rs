@@ -108,7 +108,7 @@ pub(crate) fn point_tails(point: BetaPoint, w: f64) -> Tails {
     if w == 0.0 {
         return beta_tails(point);
     }
-    mixture_tails(BetaFamily(point), Weights { q: 0.0, w }, point.excess < w)
+    mixture_tails(BetaFamily(point), w, point.excess < w)
 }
 
 /// Logarithm of the density of the ratio times the ratio.

@@ -6,9 +6,7 @@ use super::{Continuous, degrees_of_freedom, number, probability, settled};
 use crate::numerics::error::Result;
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::{BetaPoint, beta_tails};
-use crate::numerics::special::gamma::stirling_remainder;
-use crate::numerics::special::logarithms::ln_1p_minus;
-use crate::numerics::special::normal::LN_SQRT_TAU;
+use crate::numerics::special::student_tail::{StudentPoint, peak, upper_factor};
 
 /// Student's t distribution.
 ///
@@ -31,8 +29,8 @@ use crate::numerics::special::normal::LN_SQRT_TAU;
 ///
 /// # Sources
 ///
-/// Johnson, Kotz, Balakrishnan (1995), Continuous Univariate Distributions 2, chapter 28. Quantile: Newton's method on
-/// the logarithm of the tail, or of the mass between 0 and t near the centre.
+/// Johnson, Kotz, Balakrishnan (1995), Continuous Univariate Distributions 2, chapter 28. Quantile: Hill (1970)
+/// and one step of fourth order; elsewhere Newton's method on the logarithm of the tail, or of the mass between 0 and t.
 ///
 /// # Example
 ///
@@ -47,11 +45,18 @@ use crate::numerics::special::normal::LN_SQRT_TAU;
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct StudentT {
     df: f64,
-    ln_peak: f64,
+    /// Density at 0.
+    peak: f64,
 }
 
 /// Where `t² / df` exceeds this, the tail is its leading power to full precision.
 const POWER_TAIL: f64 = 1e18;
+
+/// Above this tail a quantile is solved for through the mass between 0 and it.
+const CENTRAL: f64 = 0.3;
+
+/// Largest step, relative to the quantile and to the tail's own scale, whose fifth power is negligible.
+const EXPANDABLE: f64 = 1e-3;
 
 /// Below this the square of `t` is finite.
 const SQUARABLE: f64 = 1e120;
@@ -64,10 +69,7 @@ impl StudentT {
     /// [`NumericsError::OutOfDomain`](crate::numerics::NumericsError::OutOfDomain) unless `0 < df <= 1e18`.
     pub fn new(df: f64) -> Result<Self> {
         let df = degrees_of_freedom("df", df)?;
-        let b = 0.5 * df;
-        // Γ(b + 1/2) / (Γ(b) sqrt(2πb)), the density at 0, by Stirling remainders.
-        let ratio = b * ln_1p_minus(1.0 / df) + stirling_remainder(b + 0.5) - stirling_remainder(b);
-        Ok(Self { df, ln_peak: ratio - LN_SQRT_TAU })
+        Ok(Self { df, peak: peak(0.5 * df) })
     }
 
     /// Degrees of freedom.
@@ -77,7 +79,7 @@ impl StudentT {
 
     /// Density at 0.
     pub(crate) fn peak(&self) -> f64 {
-        libm::exp(self.ln_peak)
+        self.peak
     }
 
     /// Both tails at `t >= 0` or, mirrored, below.
@@ -89,8 +91,12 @@ impl StudentT {
             return Tails::Upper(Scaled::ZERO);
         }
         if t / self.df.sqrt() > POWER_TAIL.sqrt() {
-            let exponent = self.df * (0.5 * libm::log(self.df) - libm::log(t)) + self.ln_peak;
-            return Tails::Upper(Scaled { factor: 1.0 / self.df.sqrt(), exponent });
+            let exponent = self.df * (0.5 * libm::log(self.df) - libm::log(t));
+            return Tails::Upper(Scaled { factor: self.peak / self.df.sqrt(), exponent });
+        }
+        let point = StudentPoint::of_ratio(0.5 * self.df, t * (t / self.df));
+        if let Some(factor) = upper_factor(point, self.peak) {
+            return Tails::Upper(Scaled { factor, exponent: -point.b * point.log });
         }
         match self.central_mass(t) {
             Tails::Lower(centre) => Tails::Upper(Scaled::plain(0.5 - 0.5 * centre.value())),
@@ -112,10 +118,14 @@ impl StudentT {
         if p == 0.0 {
             return Ok(f64::INFINITY);
         }
-        let start = self.starting_point(p)?;
+        let normal = normal_upper_quantile(p)?;
+        if let Some(quantile) = self.expanded_quantile(p, normal) {
+            return Ok(quantile);
+        }
+        let start = self.starting_point(p, normal);
         let what = "quantile of Student's t";
-        // Above a tail of 0.2 the mass between 0 and t keeps the relative accuracy that the tail loses there.
-        let central = p > 0.2;
+        // Above this tail the mass between 0 and t keeps the relative accuracy that the tail loses there.
+        let central = p > CENTRAL;
         let target = libm::log(if central { 0.5 - p } else { p });
         beyond_range(monotone_root(what, Scale::Logarithmic, start, POSITIVE_RANGE, |t| {
             let (ln, sign) = if central && t < SQUARABLE {
@@ -129,27 +139,70 @@ impl StudentT {
         }))
     }
 
-    /// A first guess: the leading power of the tail, or the normal quantile stretched, whichever is smaller.
-    fn starting_point(&self, p: f64) -> Result<f64> {
-        let normal = normal_upper_quantile(p)?;
-        let ln_power = 0.5 * libm::log(self.df)
-            + (self.ln_peak - 0.5 * libm::log(self.df) - libm::log(p)) / self.df;
-        let z2 = normal * normal;
-        let stretched = if z2 < self.df { normal * self.stretch(z2) } else { f64::MAX };
-        Ok(stretched.min(libm::exp(ln_power.min(700.0))).max(1e-300))
+    /// The positive quantile by one step of fourth order from [`Self::stretched`]; none where that is too far off.
+    fn expanded_quantile(&self, p: f64, normal: f64) -> Option<f64> {
+        let df = self.df;
+        let log = self.stretched(normal)?;
+        let ratio = libm::expm1(log);
+        let y = 1.0 / (1.0 + ratio);
+        let point = StudentPoint { b: 0.5 * df, log, x: ratio * y, y };
+        let root = (df * ratio).sqrt();
+        // All in units of the density at the start, peak · y^(b + 1/2).
+        let slope = self.peak * y.sqrt();
+        let scale = slope * libm::exp(-point.b * log);
+        let u = if p > CENTRAL {
+            // Near the centre the mass between 0 and t keeps the relative accuracy that the tail loses there.
+            (0.5 - p) / scale - root * centre_series(point)
+        } else {
+            upper_factor(point, self.peak)? / slope - p / scale
+        };
+        // Reversion of the tail's Taylor series by g = -f'/f and its derivatives.
+        let c = (df + 1.0) / df * y;
+        let g = c * root;
+        if (u * g).abs() > EXPANDABLE || u.abs() > EXPANDABLE * root {
+            return None;
+        }
+        let g1 = c * (y - point.x);
+        let g2 = -2.0 * g * (3.0 * y - point.x) * y / df;
+        let third = (g1 + 2.0 * g * g) / 6.0;
+        let fourth = (g2 + 7.0 * g * g1 + 6.0 * g * g * g) / 24.0;
+        Some(root + u * (1.0 + u * (0.5 * g + u * (third + u * fourth))))
+    }
+
+    /// `ln(1 + t²/df)` at nearly the quantile whose normal counterpart is `z`; none where the expansion does not serve.
+    ///
+    /// Hill (1970), Communications of the ACM 13(10), 617-620: `z² ≈ (df - ½) ln(1 + t²/df)` with two corrections.
+    fn stretched(&self, z: f64) -> Option<f64> {
+        let (a, z2) = (self.df - 0.5, z * z);
+        let v = 1.0 / (48.0 * a * a);
+        let second = ((0.4 * z2 + 6.3) * z2 + 36.0) * z2 + 94.5;
+        let w = z * (1.0 - v * (z2 + 3.0 - v * second));
+        (a > 2.0 && z2 < a).then(|| w * w / a)
+    }
+
+    /// A first guess elsewhere: the leading power of the tail, or the normal quantile stretched, whichever is smaller.
+    fn starting_point(&self, p: f64, normal: f64) -> f64 {
+        let ln_root = 0.5 * libm::log(self.df);
+        let ln_power = ln_root + (libm::log(self.peak) - ln_root - libm::log(p)) / self.df;
+        let power = libm::exp(ln_power.min(700.0));
+        let stretched =
+            self.stretched(normal).map_or(f64::MAX, |log| (self.df * libm::expm1(log)).sqrt());
+        stretched.min(power).max(1e-300)
     }
 }
 
-impl StudentT {
-    /// Quantile of t over that of the normal with the square `z2`: Fisher, Cornish (1960), Technometrics 2, 209-225, in
-    /// the form of Abramowitz, Stegun (1964), 26.7.5.
-    fn stretch(&self, z2: f64) -> f64 {
-        let v = 1.0 / self.df;
-        let second = ((5.0 * z2 + 16.0) * z2 + 3.0) / 96.0;
-        let third = (((3.0 * z2 + 19.0) * z2 + 17.0) * z2 - 15.0) / 384.0;
-        let fourth = ((((79.0 * z2 + 776.0) * z2 + 1482.0) * z2 - 1920.0) * z2 - 945.0) / 92160.0;
-        1.0 + v * ((z2 + 1.0) / 4.0 + v * (second + v * (third + v * fourth)))
+/// `Σ (b + ½)_n / (3/2)_n x^n`: the mass between 0 and `t` over `t f(t)`.
+fn centre_series(point: StudentPoint) -> f64 {
+    let (mut top, mut bottom) = (point.b + 0.5, 1.5);
+    let (mut term, mut sum) = (1.0, 1.0);
+    // Used for t < 1 and at least 2.5 degrees of freedom, where every ratio of terms is below 0.6.
+    while term > 1e-17 * sum {
+        term *= point.x * top / bottom;
+        sum += term;
+        top += 1.0;
+        bottom += 1.0;
     }
+    sum
 }
 
 impl Continuous for StudentT {
@@ -160,7 +213,7 @@ impl Continuous for StudentT {
         } else {
             2.0 * libm::log(x) - libm::log(self.df)
         };
-        Ok(self.ln_peak - 0.5 * (self.df + 1.0) * growth)
+        Ok(libm::log(self.peak) - 0.5 * (self.df + 1.0) * growth)
     }
 
     fn cdf(&self, x: f64) -> Result<f64> {

@@ -5,6 +5,7 @@ use crate::numerics::special::gamma::{decay_length, stirling_remainder};
 use crate::numerics::special::legendre;
 use crate::numerics::special::logarithms::{ln_1p_minus_near_zero, ln_ratio_minus};
 use crate::numerics::special::poisson_mixture::{Family, Weights};
+use crate::numerics::special::student_tail::{StudentPoint, peak, upper_factor};
 
 /// The point `x` of a beta distribution with shapes `a` and `b`, kept through the odds so that both `x` and `1 - x`,
 /// and their distance from the mean, are known to full relative accuracy.
@@ -218,6 +219,42 @@ impl Family for BetaFamily {
     fn shape(&self, j: f64) -> f64 {
         self.0.a + j
     }
+
+    fn distance(&self, w: f64) -> f64 {
+        let BetaPoint { a, b, excess, .. } = self.0;
+        (excess - w) / (a + 2.0 * w + (a + w) * ((a + w) / b)).sqrt()
+    }
+
+    fn start(&self) -> (f64, f64) {
+        led_up(self.0).unwrap_or_else(|| (self.tails(0.0).lower(), self.step(0.0).value()))
+    }
+}
+
+/// Shapes up to which a tail is led up from shape 1/2 or 1.
+const MANY_STEPS: f64 = 20.0;
+
+/// `I_x(a, b)` to within a few roundings of 1 and [`beta_step`], for whole or half `a`: from shape 1, where the upper
+/// tail is `y^b`, or 1/2, where it is one of Student's t.
+fn led_up(point: BetaPoint) -> Option<(f64, f64)> {
+    let BetaPoint { a, b, odds, x, .. } = point;
+    if a > MANY_STEPS || 2.0 * a != libm::floor(2.0 * a) {
+        return None;
+    }
+    let student = StudentPoint::of_ratio(b, odds / b);
+    let fall = libm::exp(-b * student.log);
+    let (mut shape, mut upper, mut step) = if a == libm::floor(a) {
+        (1.0, fall, b * x * fall)
+    } else {
+        let peak = peak(b);
+        let upper = upper_factor(student, peak)?;
+        (0.5, 2.0 * upper * fall, 2.0 * (2.0 * b * x).sqrt() * peak * fall)
+    };
+    while shape < a {
+        upper += step;
+        step *= x * (shape + b) / (shape + 1.0);
+        shape += 1.0;
+    }
+    Some((1.0 - upper, step))
 }
 
 /// The larger root of `j² + linear j + constant = 0`, or 0 where it is negative.

@@ -1,9 +1,12 @@
 //! Gamma function: logarithm, Stirling remainder, and the regularised incomplete gamma function in both tails.
 
+use core::f64::consts::{FRAC_2_SQRT_PI, SQRT_2};
+
 use crate::numerics::scaled::{Scaled, Tails};
 use crate::numerics::special::beta::larger_root;
 use crate::numerics::special::legendre;
 use crate::numerics::special::logarithms::{ln_1p_minus_near_zero, ln_ratio_minus};
+use crate::numerics::special::normal::{INV_SQRT_TAU, mills_ratio};
 use crate::numerics::special::poisson_mixture::{Family, Weights};
 
 /// Natural logarithm of the gamma function of a positive argument.
@@ -268,4 +271,34 @@ impl Family for GammaFamily {
     fn shape(&self, j: f64) -> f64 {
         self.a + j
     }
+
+    fn distance(&self, w: f64) -> f64 {
+        (self.x - self.a - w) / (self.a + 2.0 * w).sqrt()
+    }
+
+    fn start(&self) -> (f64, f64) {
+        let Self { a, x } = *self;
+        if a > MANY_STEPS || 2.0 * a != libm::floor(2.0 * a) || x > 600.0 {
+            return (self.tails(0.0).lower(), self.step(0.0).value());
+        }
+        // From shape 1, where the tail is e^-x, or 1/2, where it is a normal tail.
+        let fall = libm::exp(-x);
+        let whole = a == libm::floor(a);
+        let (mut shape, mut upper, mut step) = if whole {
+            (1.0, fall, x * fall)
+        } else {
+            let root = x.sqrt();
+            let normal = 2.0 * INV_SQRT_TAU * fall * mills_ratio(SQRT_2 * root);
+            (0.5, normal, FRAC_2_SQRT_PI * root * fall)
+        };
+        while shape < a {
+            upper += step;
+            shape += 1.0;
+            step *= x / shape;
+        }
+        (1.0 - upper, step)
+    }
 }
+
+/// Shapes up to which a tail is led up from shape 1/2 or 1.
+const MANY_STEPS: f64 = 20.0;

@@ -6,8 +6,10 @@
 //! upper one from small `j` upward. What is carried along is the product `g_j = p_j D_j` and the ratio of tail to step,
 //! which stay of moderate size where the tail itself is as small as 1e-300.
 //!
-//! Where the largest term lies beyond [`WIDE`], the terms are so smooth in `j` that the sum equals the integral over
-//! real `j` to full precision, and the trapezoidal rule with a step of many `j` takes its place.
+//! Where the terms form a bell away from 0 they are so smooth in `j` that the sum equals the integral over real `j` to
+//! full precision, and so does the trapezoidal rule with a stride of many `j`, over which ratio and product are led by
+//! products of the recurrences' factors; beyond [`WIDE`] its nodes are computed each on its own. Where neither tail is
+//! small, the lower one is summed upward from `j = 0` by subtraction: that is shorter.
 
 use super::trapezoid::trapezoid;
 use crate::numerics::scaled::{Scaled, Tails};
@@ -38,6 +40,14 @@ pub(crate) trait Family: Copy {
 
     /// The first shape at `j`, by which `D_j` is multiplied in the density.
     fn shape(&self, j: f64) -> f64;
+
+    /// Distance of the point from the mean of the mixture with Poisson weights of mean `w`, in standard deviations.
+    fn distance(&self, w: f64) -> f64;
+
+    /// `L_0` to within a few roundings of 1, and `D_0` to full relative accuracy.
+    fn start(&self) -> (f64, f64) {
+        (self.tails(0.0).lower(), self.step(0.0).value())
+    }
 }
 
 /// Weights `p_j = e^-w w^(q+j) / Γ(q + j + 1)`, `j = 0, 1, …`; `q = 0` gives Poisson probabilities.
@@ -55,12 +65,53 @@ const NEGLIGIBLE: f64 = 4e-18;
 /// Largest position of the peak for which the terms are summed one by one.
 const WIDE: f64 = 3000.0;
 
-/// Both tails of the mixture, of which the lower one is computed directly if `below_mean`.
-pub(crate) fn mixture_tails(family: impl Family, weights: Weights, below_mean: bool) -> Tails {
+/// Both tails of the mixture with Poisson weights of mean `w`, of which the lower one is computed directly if
+/// `below_mean`, unless neither is small.
+pub(crate) fn mixture_tails(family: impl Family, w: f64, below_mean: bool) -> Tails {
+    if w < FEW && family.distance(w).abs() < CENTRAL {
+        let lower = central_sum(family, w);
+        if lower > SMALL && lower < 1.0 - SMALL {
+            return Tails::Lower(Scaled::plain(lower));
+        }
+    }
+    let weights = Weights { q: 0.0, w };
     if below_mean {
         Tails::Lower(lower_sum(family, weights))
     } else {
         Tails::Upper(upper_sum(family, weights))
+    }
+}
+
+/// Below this mean of the weights their sum may begin at 0.
+const FEW: f64 = 60.0;
+
+/// Within this many standard deviations of the mean neither tail is likely to be small.
+const CENTRAL: f64 = 1.7;
+
+/// A tail below this is summed by itself, from terms that are all positive.
+const SMALL: f64 = 0.05;
+
+/// `Σ p_j L_j` from 0 upward with `L_{j+1} = L_j - D_j`: a few roundings of 1 are lost, which only a small tail would feel.
+fn central_sum(family: impl Family, w: f64) -> f64 {
+    let (mut tail, mut step) = family.start();
+    let mut weight = libm::exp(-w);
+    let mut sum = weight * tail;
+    let mut previous = sum;
+    let mut j = 0.0;
+    loop {
+        let (top, bottom) = family.growth(j);
+        tail -= step;
+        j += 1.0;
+        let inverse = 1.0 / (bottom * j);
+        weight *= w * (bottom * inverse);
+        step *= top * (j * inverse);
+        let term = weight * tail;
+        sum += term;
+        // Rounding may leave a vanishing tail below 0. Negated, so that not a number ends the loop as well.
+        if !(term > 0.0 && (term > previous || term > NEGLIGIBLE * sum)) {
+            return sum;
+        }
+        previous = term;
     }
 }
 
@@ -73,6 +124,10 @@ pub(crate) fn lower_sum(family: impl Family, weights: Weights) -> Scaled {
     let peak = family.peak(weights);
     if peak > WIDE {
         return smooth_sum(family, weights, peak, |j| family.tails(j).lower_scaled());
+    }
+    let stride = stride(family, weights, peak);
+    if stride > 1.0 {
+        return lower_strides(family, weights, peak, stride);
     }
     let (anchor, mut g, mut j) = upper_edge(family, weights, peak);
     let mut ratio = family.lower_ratio(j);
@@ -130,6 +185,10 @@ pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
     if peak > WIDE {
         return smooth_sum(family, weights, peak, |j| family.tails(j).upper_scaled());
     }
+    let stride = stride(family, weights, peak);
+    if stride > 1.0 {
+        return upper_strides(family, weights, peak, stride);
+    }
     // The terms fall off downward at least like a Gaussian curve.
     let reach = if peak > NARROW { 9.0 * variance(family, q, peak).sqrt() + 3.0 } else { peak };
     let start = libm::floor((peak - reach).max(0.0));
@@ -154,6 +213,95 @@ pub(crate) fn upper_sum(family: impl Family, weights: Weights) -> Scaled {
         previous = term;
     }
     at_anchor(family, weights, start).times(sum)
+}
+
+/// How many indices a step of the trapezoidal rule may skip where the terms form a smooth bell away from 0.
+fn stride(family: impl Family, weights: Weights, peak: f64) -> f64 {
+    let spread = variance(family, weights.q, peak).sqrt();
+    let widest = libm::floor(SMOOTH * spread);
+    if peak <= NARROW || peak < DOWNWARD * spread + widest + 1.0 {
+        return 1.0;
+    }
+    // The products over one stride have to stay within the range of f64.
+    let (top, bottom) = family.growth(2.0 * peak);
+    let largest = top.max(bottom).max(weights.w).max(2.0 * peak);
+    widest.min(libm::floor(300.0 / libm::log(largest)))
+}
+
+/// Step, in standard deviations of the bell, at which the trapezoidal rule is exact to 1e-18.
+const SMOOTH: f64 = 0.68;
+
+/// Standard deviations below the peak where the terms begin to matter; they fall off at least like a Gaussian curve.
+const DOWNWARD: f64 = 8.5;
+
+/// What one stride from `j` upward does: over its steps, the products of the numerators and denominators of the growth
+/// of `D`, of the growth of `p`, and the numerator of the sum of the steps passed, over the last one.
+struct Passage {
+    top: f64,
+    bottom: f64,
+    weight: f64,
+    index: f64,
+    steps: f64,
+}
+
+fn passage(family: impl Family, weights: Weights, j: f64, stride: f64) -> Passage {
+    let mut passed = Passage { top: 1.0, bottom: 1.0, weight: 1.0, index: 1.0, steps: 0.0 };
+    let end = j + stride;
+    let mut j = j;
+    while j < end {
+        let (top, bottom) = family.growth(j);
+        j += 1.0;
+        passed.steps = (passed.steps + passed.top) * bottom;
+        passed.top *= top;
+        passed.bottom *= bottom;
+        passed.weight *= weights.w;
+        passed.index *= weights.q + j;
+    }
+    passed
+}
+
+/// `Σ p_j U_j` by the trapezoidal rule; the tail is led from node to node.
+fn upper_strides(family: impl Family, weights: Weights, peak: f64, stride: f64) -> Scaled {
+    let spread = variance(family, weights.q, peak).sqrt();
+    let start = libm::floor(peak - DOWNWARD * spread);
+    let (mut g, mut j) = (1.0, start);
+    let mut ratio = family.upper_ratio(j);
+    let mut sum = g * ratio;
+    let mut previous = sum;
+    loop {
+        let passed = passage(family, weights, j, stride);
+        ratio = (ratio * passed.bottom + passed.steps) / passed.top;
+        g *= passed.weight / passed.bottom * (passed.top / passed.index);
+        j += stride;
+        let term = g * ratio;
+        sum += term;
+        if !(term >= previous || term * term > NEGLIGIBLE * sum * previous) {
+            break;
+        }
+        previous = term;
+    }
+    at_anchor(family, weights, start).times(sum * stride)
+}
+
+/// `Σ p_j L_j` likewise, from large `j` downward.
+fn lower_strides(family: impl Family, weights: Weights, peak: f64, stride: f64) -> Scaled {
+    let (start, mut g, mut j) = upper_edge(family, weights, peak);
+    let mut ratio = family.lower_ratio(j);
+    let mut sum = g * ratio;
+    let mut previous = sum;
+    while j >= stride {
+        j -= stride;
+        let passed = passage(family, weights, j, stride);
+        ratio = (ratio * passed.top + passed.steps) / passed.bottom;
+        g *= passed.bottom / passed.weight * (passed.index / passed.top);
+        let term = g * ratio;
+        sum += term;
+        if !(term >= previous || term * term > NEGLIGIBLE * sum * previous) {
+            break;
+        }
+        previous = term;
+    }
+    at_anchor(family, weights, start).times(sum * stride)
 }
 
 /// `Σ p_j (a + j) D_j`: the density of the mixture times its argument.

@@ -6,13 +6,16 @@
 //!
 //! May use `numerics` and `quantities`; knows nothing of YAML text, files, reports or words beyond labels.
 
+mod correlation;
 mod fault;
 pub mod inputs;
+mod omnibus_f;
 mod one_mean;
 mod one_sample;
 mod paired_means;
 mod parallel_means;
 mod problem;
+mod welch_means;
 
 pub use fault::{Aspect, Fault, Path, Step, Tables};
 pub use problem::{
@@ -67,5 +70,11 @@ pub trait StudyDesign: Sync {
 
 /// All designs, in the order in which they are listed. The first that serves a structure, scale and aim is the
 /// default analysis of that combination.
-pub static REGISTRY: &[&dyn StudyDesign] =
-    &[&parallel_means::ParallelMeans, &one_mean::OneMean, &paired_means::PairedMeans];
+pub static REGISTRY: &[&dyn StudyDesign] = &[
+    &parallel_means::ParallelMeans,
+    &welch_means::WelchMeans,
+    &omnibus_f::OmnibusF,
+    &one_mean::OneMean,
+    &correlation::Correlation,
+    &paired_means::PairedMeans,
+];

@@ -202,6 +202,17 @@ pub trait Problem: Debug + Send + Sync {
     /// Sizes of all groups when the group with the largest weight has `step` units; no group shrinks as it grows. `None` when a size would exceed [`crate::quantities::LARGEST_SIZE`].
     fn sizes(&self, step: u64) -> Option<Sizes>;
 
+    /// The step from which on a power that has reached the target is not lost again as the step grows. A search tries
+    /// every step below it, where the power may fall back, as it can when a step adds units to one group alone.
+    fn rising_from(&self) -> u64 {
+        self.smallest_step()
+    }
+
+    /// Effects lie below this limit: 1 for a correlation, none for a difference.
+    fn effect_limit(&self) -> f64 {
+        f64::INFINITY
+    }
+
     /// Whether the analysis exists at sizes that need not belong to a step, such as those left after losses.
     fn is_possible(&self, sizes: &Sizes) -> bool {
         sizes.per_group.iter().all(|n| *n >= 2)

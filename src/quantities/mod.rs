@@ -14,8 +14,8 @@ pub use assumption::{Assumption, Grounds};
 pub use decimal::Decimal;
 pub use losses::Losses;
 pub use ranges::{
-    ALPHA, CORRELATION, DIFFERENCE, Grouped, LOSS_FRACTION, OutOfRange, POWER, Range, SPREAD,
-    WEIGHT, Written,
+    ALPHA, CORRELATION, CORRELATION_SIZE, COST, DIFFERENCE, Grouped, LOSS_FRACTION, OutOfRange,
+    POWER, Range, SPREAD, WEIGHT, Written,
 };
 pub use risk::{Alpha, Power, Risk, Sides};
 pub use words::{Kind, Outcome, Scale, Unit, UnitHolds};

@@ -89,6 +89,26 @@ pub const WEIGHT: Range = Range {
     advice: "must lie between 0.001 and 1000; 1 for every group means equal groups",
 };
 
+/// A correlation to detect, by its size.
+pub const CORRELATION_SIZE: Range = Range {
+    name: "the size of the correlation",
+    low: 1e-6,
+    low_included: true,
+    high: 0.9999,
+    high_included: true,
+    advice: "must lie between 0 and 1, both excluded (from 0.000001 to 0.9999)",
+};
+
+/// Cost of a unit, in whatever currency; only ratios count.
+pub const COST: Range = Range {
+    name: "the cost of a unit",
+    low: 1e-6,
+    low_included: true,
+    high: 1e12,
+    high_included: true,
+    advice: "must be above 0 and at most 1e12, in the same currency for each group",
+};
+
 impl Range {
     /// The value if it is legal.
     ///

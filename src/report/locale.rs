@@ -94,7 +94,7 @@ impl Locale {
     }
 
     /// A computed probability as a decimal fraction with three decimals, rounded to the nearest. Where rounding up would
-    /// land on a whole hundredth, as targets are, the number is written as what it is: 0.79996 is `< 0.800`, so that a
+    /// land on a multiple of 0.05, as targets are, the number is written as what it is: 0.79996 is `< 0.800`, so that a
     /// missed target never looks met. Certainty is never claimed.
     pub fn probability(&self, value: f64) -> String {
         if value < 0.001 && value > 0.0 {
@@ -120,7 +120,7 @@ impl Locale {
         if nearest >= 1000.0 {
             return format!(">{THIN}{}", self.fixed(0.999 * scale, decimals));
         }
-        let flattering = nearest > value * 1000.0 * (1.0 + 1e-12) && nearest % 10.0 == 0.0;
+        let flattering = nearest > value * 1000.0 * (1.0 + 1e-12) && nearest % 50.0 == 0.0;
         let text = self.fixed(nearest / 1000.0 * scale, decimals);
         if flattering { format!("<{THIN}{text}") } else { text }
     }

@@ -30,7 +30,8 @@ pub(super) fn firmness(
     ceiling: Option<&CeilingPlan>,
 ) -> Result<Firmness, SolverError> {
     let planned = problem.planned();
-    let table_effects: Vec<_> = TABLE_EFFECTS.iter().map(|f| f * planned.effect).collect();
+    let mut table_effects: Vec<_> = TABLE_EFFECTS.iter().map(|f| f * planned.effect).collect();
+    table_effects.retain(|effect| *effect < problem.effect_limit());
     let Some(spread) = problem.spread() else {
         return without_spread(problem, sizes, ceiling, table_effects);
     };

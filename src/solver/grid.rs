@@ -3,9 +3,9 @@
 use std::collections::BTreeMap;
 
 use super::error::SolverError;
-use super::sample_size::{largest_step, within_reach};
+use super::sample_size::{first_to_reach, largest_step, within_reach};
 use crate::designs::{AtSizes, Point, Problem};
-use crate::numerics::{NumericsError, integer_search};
+use crate::numerics::NumericsError;
 
 /// The smallest step that reaches the target for each effect (row) and spread (column); `None` where none does.
 ///
@@ -63,13 +63,13 @@ impl Fixed<'_> {
 
     fn smallest(&mut self, at: Point, hint: Option<u64>, largest: u64) -> Result<u64, SolverError> {
         let target = self.problem.risk().power.get();
-        let lowest = self.problem.smallest_step();
-        let reaches = |step| self.reaches(step, at, target);
-        integer_search::smallest_monotone(lowest, largest, hint, reaches)
-            .map(|found| found.n)
-            .map_err(|error| match error {
+        let problem = self.problem;
+        let reached = |step| Ok(f64::from(self.reaches(step, at, target)?));
+        first_to_reach(problem, largest, hint, 1.0, reached).map(|found| found.n).map_err(|error| {
+            match error {
                 NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,
                 other => other.into(),
-            })
+            }
+        })
     }
 }

@@ -2,7 +2,8 @@
 
 use super::error::SolverError;
 use crate::designs::{Point, Problem, Sizes};
-use crate::numerics::{NumericsError, integer_search};
+use crate::numerics::NumericsError;
+use crate::numerics::integer_search::{self, Smallest};
 use crate::quantities::LARGEST_SIZE;
 
 /// Smallest sizes with their proof.
@@ -41,16 +42,35 @@ pub(super) fn smallest_for(
         Some(sizes) => problem.power(&sizes, at),
         None => Err(NumericsError::TargetOutOfReach { largest: step, best: f64::NAN }),
     };
-    let lowest = problem.smallest_step();
     let found =
-        integer_search::smallest_rising(lowest, largest, hint, target, power).map_err(|error| {
-            match error {
-                NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,
-                other => other.into(),
-            }
+        first_to_reach(problem, largest, hint, target, power).map_err(|error| match error {
+            NumericsError::TargetOutOfReach { .. } => SolverError::OutOfReach,
+            other => other.into(),
         })?;
     let sizes = problem.sizes(found.n).ok_or(SolverError::TooMany)?;
     Ok(Found { sizes, power: found.value, power_one_fewer: found.value_before })
+}
+
+/// The first step up to `largest` at which `value` reaches the target: every step below [`Problem::rising_from`] is
+/// tried, above it the value is taken to stay above the target once it is.
+pub(super) fn first_to_reach(
+    problem: &dyn Problem,
+    largest: u64,
+    hint: Option<u64>,
+    target: f64,
+    mut value: impl FnMut(u64) -> Result<f64, NumericsError>,
+) -> Result<Smallest, NumericsError> {
+    let lowest = problem.smallest_step();
+    let last_tried = problem.rising_from().min(largest).saturating_sub(1);
+    if last_tried < lowest {
+        return integer_search::smallest_rising(lowest, largest, hint, target, value);
+    }
+    match integer_search::first_reaching(lowest, last_tried, target, &mut value) {
+        Err(NumericsError::TargetOutOfReach { .. }) => {
+            integer_search::smallest_rising(last_tried, largest, hint, target, value)
+        }
+        found => found,
+    }
 }
 
 /// The largest step for which no group exceeds the largest size.

@@ -47,6 +47,7 @@ impl Homes<'_> {
         match places.as_slice() {
             [one] => Some(one.clone()),
             [one, other] => Some(format!("{one}, or {other}")),
+            [one, two, three] => Some(format!("{one}, {two}, or {three}")),
             _ => None,
         }
     }

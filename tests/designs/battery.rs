@@ -66,7 +66,8 @@ fn power_rises_with_size_and_effect_and_falls_with_spread() {
             let power = problem.power(&sizes, at).expect("it exists");
             assert!(power >= last, "{name}: power falls at {step}");
             last = power;
-            let more = Point { effect: at.effect * 1.01, ..at };
+            let more = (at.effect * 1.01).min(problem.effect_limit());
+            let more = Point { effect: more, ..at };
             let wider = Point { nuisance: at.nuisance * 1.01, ..at };
             assert!(problem.power(&sizes, more).expect("it exists") >= power, "{name}");
             assert!(problem.power(&sizes, wider).expect("it exists") <= power, "{name}");
@@ -82,6 +83,9 @@ fn smallest_is_smallest_for_every_small_size() {
                 effect: problem.planned().nuisance * f64::from(tenths) / 10.0,
                 ..problem.planned()
             };
+            if at.effect >= problem.effect_limit() {
+                continue;
+            }
             let target = problem.risk().power.get();
             let found = smallest_sizes(problem.as_ref(), at).expect("within reach");
             let reaches = |step| {
@@ -113,7 +117,8 @@ fn the_detectable_effect_has_the_wanted_power() {
 fn a_grid_gives_what_single_searches_give() {
     for (name, problem) in problems() {
         let planned = problem.planned();
-        let effects: Vec<_> = (3..14).map(|i| planned.effect * f64::from(i) / 7.0).collect();
+        let mut effects: Vec<_> = (3..14).map(|i| planned.effect * f64::from(i) / 7.0).collect();
+        effects.retain(|effect| *effect < problem.effect_limit());
         let spreads: Vec<_> = (4..13).map(|i| planned.nuisance * f64::from(i) / 8.0).collect();
         let grid = size_grid(problem.as_ref(), &effects, &spreads).expect("solvable");
         for (row, effect) in grid.iter().zip(&effects) {

@@ -101,6 +101,21 @@ impl Parallel {
         let total = per_group.iter().sum();
         Some(Sizes { step, per_group, total })
     }
+
+    /// The sizes that belong to an unrounded size of the largest group: each group rounded up on its own. `None` beyond
+    /// [`LARGEST_SIZE`].
+    pub fn rounded_up(&self, step: f64) -> Option<Sizes> {
+        let step = step.max(self.smallest_step() as f64);
+        if step > LARGEST_SIZE as f64 {
+            return None;
+        }
+        let largest = self.largest_weight();
+        let up =
+            |g: &Group| (step * (g.weight / largest) * (1.0 - 4.0 * f64::EPSILON)).ceil() as u64;
+        let per_group: Vec<_> = self.groups.iter().map(up).collect();
+        let total = per_group.iter().sum();
+        Some(Sizes { step: step.ceil() as u64, per_group, total })
+    }
 }
 
 /// Reads groups; paths start at the key `design`.

@@ -149,13 +149,25 @@ impl Spread {
 /// No value or more than one way of giving it, a standard deviation that is not positive, too few values, values that
 /// do not vary, or a fault of the CSV file.
 pub fn read_spread(keys: &SpreadKeys, tables: &dyn Tables) -> Result<Spread, Vec<Fault>> {
-    let at = Path::of("spread");
+    read_spread_at(keys, &Path::of("spread"), tables)
+}
+
+/// The same for a standard deviation that stands at another path.
+///
+/// # Errors
+///
+/// As [`read_spread`].
+pub fn read_spread_at(
+    keys: &SpreadKeys,
+    at: &Path,
+    tables: &dyn Tables,
+) -> Result<Spread, Vec<Fault>> {
     match keys {
         SpreadKeys::Bare(sd) => {
-            let sd = checked_sd(*sd, &at)?;
+            let sd = checked_sd(*sd, at)?;
             Ok(Spread { sd, df: None, origin: SpreadOrigin::Stated, grounds: Grounds::default() })
         }
-        SpreadKeys::Told(told) => read_told(told, &at, tables),
+        SpreadKeys::Told(told) => read_told(told, at, tables),
     }
 }
 

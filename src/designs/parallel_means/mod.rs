@@ -35,7 +35,7 @@ use super::problem::{
 use super::{Card, Fault, Path, StudyDesign, Tables};
 use crate::numerics::multivariate::ShiftedComparisons;
 use crate::numerics::{self, Continuous, NoncentralT, normal_cdf, normal_upper_quantile, roots};
-use crate::quantities::{LARGEST_SIZE, Outcome, Risk, Scale, Sides};
+use crate::quantities::{Outcome, Risk, Scale, Sides};
 use family::{Family, joint_sides};
 use trial::{Comparison, MeansTrial};
 
@@ -118,6 +118,18 @@ impl StudyDesign for ParallelMeans {
             }
         }
     }
+}
+
+/// All pairs of groups by t tests at the Bonferroni level, for a design that tests the groups as a whole.
+pub(super) fn bonferroni_pairs(
+    parallel: &Parallel,
+    effect: &Effect,
+    spread: &Spread,
+    risk: &StatedRisk,
+) -> Box<dyn Problem> {
+    let risk = StatedRisk { multiplicity: Multiplicity::Bonferroni, ..risk.clone() };
+    let (parallel, effect, spread) = (parallel.clone(), effect.clone(), spread.clone());
+    Box::new(Means { parallel, effect, spread, risk, covariates: 0 })
 }
 
 /// What cannot stand together: a multiplicity without several comparisons, and one-sided tests of all pairs, which have
@@ -240,20 +252,6 @@ impl Means {
         Ok((z_alpha, z_beta))
     }
 
-    /// The sizes that belong to an unrounded size of the largest group: each group rounded up on its own.
-    fn rounded_up(&self, step: f64) -> Option<Sizes> {
-        let step = step.max(self.smallest_step() as f64);
-        if step > LARGEST_SIZE as f64 {
-            return None;
-        }
-        let largest = self.parallel.largest_weight();
-        let up =
-            |g: &Group| (step * (g.weight / largest) * (1.0 - 4.0 * f64::EPSILON)).ceil() as u64;
-        let per_group: Vec<_> = self.parallel.groups.iter().map(up).collect();
-        let total = per_group.iter().sum();
-        Some(Sizes { step: step.ceil() as u64, per_group, total })
-    }
-
     fn changed(&self, change: impl FnOnce(&mut Self)) -> Box<dyn Problem> {
         let mut other = self.clone();
         change(&mut other);
@@ -370,7 +368,7 @@ impl Problem for Means {
         let ratio = at.nuisance * self.relative_factor() / at.effect;
         let size = |a: f64, b: f64| ((a + b) * ratio) * ((a + b) * ratio);
         let step = size(z_alpha, z_beta);
-        Ok(self.rounded_up(step).map(|sizes| Textbook {
+        Ok(self.parallel.rounded_up(step).map(|sizes| Textbook {
             step,
             step_with_table_quantiles: size(hundredths(z_alpha), hundredths(z_beta)),
             z_alpha,
@@ -557,7 +555,7 @@ impl Means {
     }
 
     fn formula(&self, id: &'static str, source: &'static str, step: f64) -> Option<Rival> {
-        let sizes = self.rounded_up(step)?;
+        let sizes = self.parallel.rounded_up(step)?;
         Some(Rival { id, source: Some(source), answer: RivalAnswer::Formula { step, sizes } })
     }
 }

@@ -326,6 +326,8 @@ pub enum CheckOutcome {
 pub struct Check {
     /// Simulated studies.
     pub replicates: u64,
+    /// How many were asked for; more than were simulated when the study is large.
+    pub asked: u64,
     /// Seed in hexadecimal digits.
     pub seed: String,
     /// Power of the comparison that the plan is about.

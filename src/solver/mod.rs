@@ -13,7 +13,7 @@ mod totals;
 pub use error::SolverError;
 pub use grid::size_grid;
 pub use monte_carlo::{Progress, Silent, seed_from};
-pub use sample_size::{smallest_sizes, textbook_sizes};
+pub use sample_size::smallest_sizes;
 
 use crate::designs::Problem;
 use crate::designs::{Point, RivalAnswer, Sizes};

@@ -76,7 +76,8 @@ pub(super) fn check(
     if replicates == 0 {
         return Ok(CheckOutcome::SwitchedOff);
     }
-    let replicates = replicates.min(BUDGET / exact.sizes.total.max(1));
+    let asked = replicates;
+    let replicates = asked.min(BUDGET / exact.sizes.total.max(1));
     if replicates < FEWEST {
         return Ok(CheckOutcome::TooLarge);
     }
@@ -95,6 +96,7 @@ pub(super) fn check(
         if expected_error > 0.0 { (power.value - exact.power) / expected_error } else { 0.0 };
     Ok(CheckOutcome::Run(Check {
         replicates,
+        asked,
         seed: seed.iter().map(|byte| format!("{byte:02x}")).collect(),
         power,
         any: estimate(tally.any),

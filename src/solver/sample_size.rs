@@ -87,15 +87,6 @@ pub(super) fn largest_step(problem: &dyn Problem) -> u64 {
     low
 }
 
-/// Sizes of the textbook formula at a point.
-///
-/// # Errors
-///
-/// [`SolverError::OutOfReach`] when the formula exceeds the largest size.
-pub fn textbook_sizes(problem: &dyn Problem, at: Point) -> Result<Sizes, SolverError> {
-    Ok(problem.textbook(at)?.ok_or(SolverError::OutOfReach)?.sizes)
-}
-
 /// Out of reach is an answer where a table or a comparison is filled; other failures stay failures.
 pub(super) fn within_reach<T>(result: Result<T, SolverError>) -> Result<Option<T>, SolverError> {
     match result {

@@ -6,15 +6,20 @@
 //!
 //! May use `numerics` and `quantities`; knows nothing of YAML text, files, reports or words beyond labels.
 
+mod averaged_test;
+mod baseline_covariate;
 mod correlation;
+mod crossover_means;
 mod fault;
 pub mod inputs;
 mod omnibus_f;
 mod one_mean;
 mod one_sample;
 mod paired_means;
+mod pairs;
 mod parallel_means;
 mod problem;
+mod randomised_blocks;
 mod welch_means;
 
 pub use fault::{Aspect, Fault, Path, Step, Tables};
@@ -74,7 +79,10 @@ pub static REGISTRY: &[&dyn StudyDesign] = &[
     &parallel_means::ParallelMeans,
     &welch_means::WelchMeans,
     &omnibus_f::OmnibusF,
+    &baseline_covariate::BaselineCovariate,
     &one_mean::OneMean,
     &correlation::Correlation,
     &paired_means::PairedMeans,
+    &crossover_means::CrossoverMeans,
+    &randomised_blocks::RandomisedBlocks,
 ];

@@ -9,7 +9,7 @@ use crate::designs::{Fault, Group, Path, Sizes};
 use crate::quantities::{Decimal, LARGEST_SIZE, WEIGHT, Written};
 
 /// Most groups one experiment may have; more comparisons than these make no readable report.
-const MOST_GROUPS: usize = 12;
+pub(super) const MOST_GROUPS: usize = 20;
 
 /// A group: its name, or a mapping with its name and its weight in the allocation.
 #[derive(Debug, Clone, PartialEq, Deserialize, JsonSchema)]
@@ -162,7 +162,7 @@ pub fn read_parallel(keys: &ParallelKeys) -> Result<Parallel, Vec<Fault>> {
 }
 
 /// All pairs, the control first in each of its own.
-fn ordered_pairs(count: usize, control: Option<usize>) -> Vec<(usize, usize)> {
+pub(super) fn ordered_pairs(count: usize, control: Option<usize>) -> Vec<(usize, usize)> {
     (0..count)
         .flat_map(|i| (i + 1..count).map(move |j| (i, j)))
         .map(|(i, j)| if control == Some(j) { (j, i) } else { (i, j) })

@@ -7,17 +7,17 @@ use crate::quantities::Sides;
 
 /// A family of comparisons of group means.
 #[derive(Debug, Clone, Copy)]
-pub(super) struct Family<'a> {
+pub(in crate::designs) struct Family<'a> {
     /// What protects it.
-    pub(super) multiplicity: Multiplicity,
+    pub(in crate::designs) multiplicity: Multiplicity,
     /// Level of the family.
-    pub(super) alpha: f64,
+    pub(in crate::designs) alpha: f64,
     /// Sides of each test.
-    pub(super) sides: Sides,
+    pub(in crate::designs) sides: Sides,
     /// Number of groups.
-    pub(super) groups: usize,
+    pub(in crate::designs) groups: usize,
     /// The compared pairs.
-    pub(super) pairs: &'a [(usize, usize)],
+    pub(in crate::designs) pairs: &'a [(usize, usize)],
 }
 
 impl Family<'_> {
@@ -27,7 +27,7 @@ impl Family<'_> {
 
     /// Level of one comparison where the procedure works by levels: of the first step for Holm. `None` for the
     /// procedures of Tukey and Dunnett, which work by the joint distribution.
-    pub(super) fn level(&self) -> Option<f64> {
+    pub(in crate::designs) fn level(&self) -> Option<f64> {
         match self.multiplicity {
             _ if self.pairs.len() == 1 => Some(self.alpha),
             Multiplicity::EachAtAlpha => Some(self.alpha),
@@ -42,7 +42,7 @@ impl Family<'_> {
     /// comparison with a larger statistic passes whatever the others do.
     ///
     /// Tukey with unequal groups is the Tukey-Kramer procedure, which is conservative (Hayter 1984).
-    pub(super) fn critical(&self, df: f64, sizes: &[f64]) -> numerics::Result<f64> {
+    pub(in crate::designs) fn critical(&self, df: f64, sizes: &[f64]) -> numerics::Result<f64> {
         match (self.level(), self.multiplicity) {
             (Some(level), _) => quantile(df, level / self.sides.count()),
             (None, Multiplicity::Tukey) => {
@@ -60,7 +60,7 @@ impl Family<'_> {
     }
 
     /// Critical values of all steps: one for the single-step procedures, a falling list for Holm.
-    pub(super) fn steps(&self, df: f64, sizes: &[f64]) -> numerics::Result<Vec<f64>> {
+    pub(in crate::designs) fn steps(&self, df: f64, sizes: &[f64]) -> numerics::Result<Vec<f64>> {
         if self.multiplicity != Multiplicity::Holm || self.pairs.len() == 1 {
             return Ok(vec![self.critical(df, sizes)?]);
         }
@@ -70,7 +70,7 @@ impl Family<'_> {
 }
 
 /// The sides of the joint distributions.
-pub(super) fn joint_sides(sides: Sides) -> multivariate::Sides {
+pub(in crate::designs) fn joint_sides(sides: Sides) -> multivariate::Sides {
     match sides {
         Sides::One => multivariate::Sides::One,
         Sides::Two => multivariate::Sides::Two,

@@ -17,17 +17,19 @@
 //! Sources: Cohen (1988), chapter 2; Guenther (1981); Šidák (1967); Dunn (1961); Holm (1979); Tukey (1953); Kramer
 //! (1956); Hayter (1984); Dunnett (1955).
 
-mod family;
-mod trial;
+pub(super) mod family;
+pub(super) mod trial;
 
 use schemars::{JsonSchema, Schema, SchemaGenerator};
 use serde::Deserialize;
 use serde_json::json;
 
+use super::averaged_test::AveragedTest;
 use super::inputs::{
     Compare, DifferenceKeys, Multiplicity, Parallel, ParallelKeys, RiskKeys, Spread, SpreadKeys,
     StatedRisk, out_of_proportion, read_difference, read_parallel, read_risk, read_spread,
 };
+use super::pairs::TTest;
 use super::problem::{
     AtSizes, Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
     Trial,
@@ -134,7 +136,7 @@ pub(super) fn bonferroni_pairs(
 
 /// What cannot stand together: a multiplicity without several comparisons, and one-sided tests of all pairs, which have
 /// no common direction (and for which Šidák's inequality is not proved, since some statistics correlate negatively).
-fn contradiction(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option<Fault> {
+pub(super) fn contradiction(parallel: &Parallel, risk: &StatedRisk, stated: bool) -> Option<Fault> {
     if parallel.pairs.len() == 1 {
         return stated.then(|| {
             Fault::key(
@@ -359,7 +361,12 @@ impl Problem for Means {
     }
 
     fn at_sizes(&self, sizes: &Sizes) -> numerics::Result<Box<dyn AtSizes>> {
-        Ok(Box::new(self.fixed(sizes)?))
+        let fixed = self.fixed(sizes)?;
+        if self.covariates == 0 {
+            return Ok(Box::new(fixed));
+        }
+        let MeansAtSizes { df, critical, factor, sides } = fixed;
+        Ok(Box::new(AveragedTest::new(TTest { df, critical, factor, sides })?))
     }
 
     fn textbook(&self, at: Point) -> numerics::Result<Option<Textbook>> {

@@ -35,27 +35,25 @@ pub(super) struct MeansTrial {
     pub(super) weakest: usize,
 }
 
-impl MeansTrial {
-    /// Marks the statistics that are rejected: each against the critical value of its step, from the largest down,
-    /// until one is not rejected; with a single critical value all steps have the same.
-    fn reject(&self, statistics: &[f64], rejected: &mut [bool]) {
-        if let [critical] = self.critical.as_slice() {
-            for (statistic, rejected) in statistics.iter().zip(rejected) {
-                *rejected = *statistic > *critical;
-            }
-            return;
+/// Marks the statistics that are rejected: each against the critical value of its step, from the largest down, until
+/// one is not rejected; with a single critical value all steps have the same.
+pub(in crate::designs) fn reject(critical: &[f64], statistics: &[f64], rejected: &mut [bool]) {
+    if let [critical] = critical {
+        for (statistic, rejected) in statistics.iter().zip(rejected) {
+            *rejected = *statistic > *critical;
         }
-        let mut order: Vec<usize> = (0..statistics.len()).collect();
-        let statistic = |i: &usize| statistics.get(*i).copied().unwrap_or(f64::NEG_INFINITY);
-        order.sort_by(|a, b| statistic(b).total_cmp(&statistic(a)));
-        rejected.fill(false);
-        for (position, critical) in order.iter().zip(&self.critical) {
-            if statistic(position) <= *critical {
-                break;
-            }
-            if let Some(rejected) = rejected.get_mut(*position) {
-                *rejected = true;
-            }
+        return;
+    }
+    let mut order: Vec<usize> = (0..statistics.len()).collect();
+    let statistic = |i: &usize| statistics.get(*i).copied().unwrap_or(f64::NEG_INFINITY);
+    order.sort_by(|a, b| statistic(b).total_cmp(&statistic(a)));
+    rejected.fill(false);
+    for (position, critical) in order.iter().zip(critical) {
+        if statistic(position) <= *critical {
+            break;
+        }
+        if let Some(rejected) = rejected.get_mut(*position) {
+            *rejected = true;
         }
     }
 }
@@ -117,7 +115,7 @@ impl Trial for MeansTrial {
             *with_shift = statistic(difference + comparison.shift);
             *without = statistic(difference);
         }
-        self.reject(with_shift, planned);
-        self.reject(without, null);
+        reject(&self.critical, with_shift, planned);
+        reject(&self.critical, without, null);
     }
 }

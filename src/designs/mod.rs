@@ -36,7 +36,7 @@ use crate::quantities::{Outcome, Scale};
 /// What a design is, for the registry, the list of designs and the report.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize)]
 pub struct Card {
-    /// Short name, also the folder of its template fragments and of its reference tests.
+    /// Short name, also the name of its template fragment.
     pub id: &'static str,
     /// What it compares, in a line.
     pub title: &'static str,

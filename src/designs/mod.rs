@@ -10,6 +10,7 @@ mod averaged_test;
 mod baseline_covariate;
 mod correlation;
 mod crossover_means;
+mod family;
 mod fault;
 pub mod inputs;
 mod omnibus_f;

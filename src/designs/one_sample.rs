@@ -22,7 +22,7 @@ use serde::Serialize;
 use serde_json::json;
 
 use super::inputs::{RiskKeys, Spread, StatedRisk};
-use super::parallel_means::MeansAtSizes;
+use super::pairs::TTest;
 use super::problem::{
     AtSizes, Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
     Trial,
@@ -100,9 +100,9 @@ impl<S: Setting> OneSample<S> {
         self.risk.risk.alpha.get() / self.risk.risk.sides.count()
     }
 
-    fn fixed(&self, n: u64) -> numerics::Result<MeansAtSizes> {
+    fn fixed(&self, n: u64) -> numerics::Result<TTest> {
         let df = n.saturating_sub(1) as f64;
-        Ok(MeansAtSizes {
+        Ok(TTest {
             df,
             critical: StudentT::new(df)?.upper_quantile(self.tail())?,
             factor: 1.0 / (n as f64).sqrt(),

@@ -1,8 +1,8 @@
 //! Means compared in pairs: factors of the standard error, the t test at fixed sizes, and the textbook formula, for
 //! the designs that end in such tests.
 
+use super::family::Family;
 use super::inputs::{Compare, Parallel, StatedRisk};
-use super::parallel_means::family::Family;
 use super::parallel_means::trial::reject;
 use super::problem::{AtSizes, Point, Sizes, Textbook};
 use crate::numerics::{self, Continuous, NoncentralT, normal_cdf, normal_upper_quantile, roots};

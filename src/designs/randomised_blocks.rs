@@ -22,6 +22,7 @@ use serde::{Deserialize, Serialize};
 use serde_json::json;
 
 use super::averaged_test::AveragedTest;
+use super::family::joint_sides;
 use super::inputs::{
     Compare, DifferenceKeys, Multiplicity, PairedSpread, PairedSpreadKeys, Parallel, RiskKeys,
     Spread, SpreadKind, StatedRisk, read_difference, read_paired_spread, read_risk,
@@ -29,7 +30,6 @@ use super::inputs::{
 };
 use super::pairs::{Comparison, NormalQuantiles, Rejection, TTest, as_numbers};
 use super::parallel_means::contradiction;
-use super::parallel_means::family::joint_sides;
 use super::problem::{
     AtSizes, Effect, Facts, Group, Lever, Point, Problem, Rival, RivalAnswer, Sizes, Textbook,
     Trial,

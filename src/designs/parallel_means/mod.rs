@@ -17,7 +17,6 @@
 //! Sources: Cohen (1988), chapter 2; Guenther (1981); Šidák (1967); Dunn (1961); Holm (1979); Tukey (1953); Kramer
 //! (1956); Hayter (1984); Dunnett (1955).
 
-pub(super) mod family;
 pub(super) mod trial;
 
 use schemars::{JsonSchema, Schema, SchemaGenerator};
@@ -25,6 +24,7 @@ use serde::Deserialize;
 use serde_json::json;
 
 use super::averaged_test::AveragedTest;
+use super::family::joint_sides;
 use super::inputs::{
     Compare, DifferenceKeys, Multiplicity, Parallel, ParallelKeys, RiskKeys, Spread, SpreadKeys,
     StatedRisk, out_of_proportion, read_difference, read_parallel, read_risk, read_spread,
@@ -35,10 +35,9 @@ use super::problem::{
     Trial,
 };
 use super::{Card, Fault, Path, StudyDesign, Tables};
+use crate::numerics;
 use crate::numerics::multivariate::ShiftedComparisons;
-use crate::numerics::{self, Continuous, NoncentralT, normal_cdf, normal_upper_quantile, roots};
 use crate::quantities::{Outcome, Risk, Scale, Sides};
-use family::{Family, joint_sides};
 use trial::{Comparison, MeansTrial};
 
 static CARD: Card = Card {
@@ -187,71 +186,24 @@ impl Means {
         self.parallel.pairs.len()
     }
 
-    fn family(&self) -> Family<'_> {
-        Family {
-            multiplicity: self.risk.multiplicity,
-            alpha: self.risk.risk.alpha.get(),
-            sides: self.risk.risk.sides,
-            groups: self.parallel.groups.len(),
-            pairs: &self.parallel.pairs,
-        }
-    }
-
     fn degrees_of_freedom(&self, sizes: &Sizes) -> f64 {
         let parameters = self.parallel.groups.len() as u64 + self.covariates;
         sizes.total.saturating_sub(parameters) as f64
     }
 
     fn critical(&self, sizes: &Sizes) -> numerics::Result<f64> {
-        self.family().critical(self.degrees_of_freedom(sizes), &as_numbers(sizes))
+        self.parallel
+            .family(&self.risk)
+            .critical(self.degrees_of_freedom(sizes), &as_numbers(sizes))
     }
 
-    /// `√(1/n_i + 1/n_j)` of a pair.
-    fn pair_factor(&self, sizes: &Sizes, (i, j): (usize, usize)) -> f64 {
-        let reciprocal =
-            |g: usize| sizes.per_group.get(g).map_or(f64::INFINITY, |n| 1.0 / *n as f64);
-        (reciprocal(i) + reciprocal(j)).sqrt()
-    }
-
-    /// Position of the comparison with the least power: the one between the smallest groups, the first of equals.
-    fn weakest_pair(&self, sizes: &Sizes) -> usize {
-        let mut weakest = (0, 0.0);
-        for (position, pair) in self.parallel.pairs.iter().enumerate() {
-            let factor = self.pair_factor(sizes, *pair);
-            if factor > weakest.1 {
-                weakest = (position, factor);
-            }
-        }
-        weakest.0
-    }
-
-    /// The largest `√(1/n_i + 1/n_j)`.
-    fn weakest_factor(&self, sizes: &Sizes) -> f64 {
-        self.parallel.pairs.iter().map(|p| self.pair_factor(sizes, *p)).fold(0.0, f64::max)
-    }
-
-    /// The same for sizes relative to the largest group, as the textbook formula takes it.
-    fn relative_factor(&self) -> f64 {
-        let largest = self.parallel.largest_weight();
-        let share = |g: usize| self.parallel.groups.get(g).map_or(1.0, |g| g.weight / largest);
-        let of_pair = |&(i, j): &(usize, usize)| (1.0 / share(i) + 1.0 / share(j)).sqrt();
-        self.parallel.pairs.iter().map(of_pair).fold(0.0, f64::max)
-    }
-
-    fn fixed(&self, sizes: &Sizes) -> numerics::Result<MeansAtSizes> {
-        Ok(MeansAtSizes {
+    fn fixed(&self, sizes: &Sizes) -> numerics::Result<TTest> {
+        Ok(TTest {
             df: self.degrees_of_freedom(sizes),
             critical: self.critical(sizes)?,
-            factor: self.weakest_factor(sizes),
+            factor: self.parallel.weakest_pair(sizes).1,
             sides: self.risk.risk.sides,
         })
-    }
-
-    fn normal_quantiles(&self) -> numerics::Result<(f64, f64)> {
-        let weights: Vec<f64> = self.parallel.groups.iter().map(|g| g.weight).collect();
-        let z_alpha = self.family().critical(f64::INFINITY, &weights)?;
-        let z_beta = normal_upper_quantile(1.0 - self.risk.risk.power.get())?;
-        Ok((z_alpha, z_beta))
     }
 
     fn changed(&self, change: impl FnOnce(&mut Self)) -> Box<dyn Problem> {
@@ -273,62 +225,6 @@ pub(super) fn two_equal_groups(
     let (compare, pairs) = (Compare::AllPairs, vec![(0, 1)]);
     let parallel = Parallel { groups, compare, pairs, allocation_why: None };
     Box::new(Means { parallel, effect, spread, risk, covariates: 0 })
-}
-
-/// A t test at fixed sizes.
-#[derive(Debug, Clone, Copy)]
-pub(super) struct MeansAtSizes {
-    pub(super) df: f64,
-    pub(super) critical: f64,
-    /// Standard error of the tested mean or difference, in units of the standard deviation.
-    pub(super) factor: f64,
-    pub(super) sides: Sides,
-}
-
-impl MeansAtSizes {
-    /// Exact power at a noncentrality.
-    pub(super) fn power_at(&self, noncentrality: f64) -> numerics::Result<f64> {
-        let t = NoncentralT::new(self.df, noncentrality)?;
-        let upper = t.sf(self.critical)?;
-        Ok(match self.sides {
-            Sides::One => upper,
-            Sides::Two => upper + t.cdf(-self.critical)?,
-        })
-    }
-
-    fn noncentrality_for(&self, power: f64) -> numerics::Result<f64> {
-        let gap = |noncentrality: f64| Ok(self.power_at(noncentrality)? - power);
-        let what = "detectable difference";
-        let start = self.critical + normal_upper_quantile(1.0 - power)?.max(0.0);
-        let bracket = roots::bracket_around(what, start, 0.5, (0.0, 1e12), gap)?;
-        Ok(roots::refine(what, bracket, roots::Tolerance::default(), gap)?.at)
-    }
-}
-
-impl AtSizes for MeansAtSizes {
-    fn power(&self, at: Point) -> numerics::Result<f64> {
-        self.power_at(at.effect / (at.nuisance * self.factor))
-    }
-
-    /// The far rejection region needs a look only where it can decide: it has no more than `Φ(−λ)`, since a negative
-    /// statistic takes a negative numerator.
-    fn reaches(&self, at: Point, target: f64) -> numerics::Result<bool> {
-        let noncentrality = at.effect / (at.nuisance * self.factor);
-        let near = NoncentralT::new(self.df, noncentrality)?.sf(self.critical)?;
-        if near >= target || self.sides == Sides::One {
-            return Ok(near >= target);
-        }
-        if near + normal_cdf(-noncentrality) < target {
-            return Ok(false);
-        }
-        Ok(self.power_at(noncentrality)? >= target)
-    }
-
-    /// The power depends on the ratio of effect to spread alone, so one root serves every spread.
-    fn detectable(&self, nuisances: &[f64], power: f64) -> numerics::Result<Vec<f64>> {
-        let noncentrality = self.noncentrality_for(power)?;
-        Ok(nuisances.iter().map(|nuisance| noncentrality * nuisance * self.factor).collect())
-    }
 }
 
 impl Problem for Means {
@@ -365,37 +261,27 @@ impl Problem for Means {
         if self.covariates == 0 {
             return Ok(Box::new(fixed));
         }
-        let MeansAtSizes { df, critical, factor, sides } = fixed;
-        Ok(Box::new(AveragedTest::new(TTest { df, critical, factor, sides })?))
+        Ok(Box::new(AveragedTest::new(fixed)?))
     }
 
     fn textbook(&self, at: Point) -> numerics::Result<Option<Textbook>> {
-        let (z_alpha, z_beta) = self.normal_quantiles()?;
-        let hundredths = |z: f64| (z * 100.0).round() / 100.0;
-        let ratio = at.nuisance * self.relative_factor() / at.effect;
-        let size = |a: f64, b: f64| ((a + b) * ratio) * ((a + b) * ratio);
-        let step = size(z_alpha, z_beta);
-        Ok(self.parallel.rounded_up(step).map(|sizes| Textbook {
-            step,
-            step_with_table_quantiles: size(hundredths(z_alpha), hundredths(z_beta)),
-            z_alpha,
-            z_beta,
-            sizes,
-        }))
+        let ratio = at.nuisance * self.parallel.relative_factor() / at.effect;
+        let quantiles = self.parallel.quantiles(&self.risk)?;
+        Ok(quantiles.size(ratio, |step| self.parallel.rounded_up(step)))
     }
 
     fn textbook_power(&self, sizes: &Sizes, at: Point) -> numerics::Result<f64> {
-        let (z_alpha, _) = self.normal_quantiles()?;
-        Ok(normal_cdf(at.effect / (at.nuisance * self.weakest_factor(sizes)) - z_alpha))
+        let standard_error = at.nuisance * self.parallel.weakest_pair(sizes).1;
+        Ok(self.parallel.quantiles(&self.risk)?.power(at.effect / standard_error))
     }
 
     fn textbook_detectable(&self, sizes: &Sizes, nuisance: f64) -> numerics::Result<f64> {
-        let (z_alpha, z_beta) = self.normal_quantiles()?;
-        Ok((z_alpha + z_beta) * nuisance * self.weakest_factor(sizes))
+        let standard_error = nuisance * self.parallel.weakest_pair(sizes).1;
+        Ok(self.parallel.quantiles(&self.risk)?.detectable(standard_error))
     }
 
     fn trial(&self, sizes: &Sizes, at: Point) -> numerics::Result<Box<dyn Trial>> {
-        let weakest = self.weakest_pair(sizes);
+        let (weakest, _) = self.parallel.weakest_pair(sizes);
         let apart = self.parallel.pairs.get(weakest).map_or(0, |pair| pair.1);
         let all_apart = self.parallel.compare == Compare::AgainstControl;
         let control = |g: usize| self.parallel.groups.get(g).is_some_and(|g| g.control);
@@ -404,13 +290,16 @@ impl Problem for Means {
         let comparisons = self.parallel.pairs.iter().map(|&(i, j)| Comparison {
             first: i,
             second: j,
-            factor: self.pair_factor(sizes, (i, j)),
+            factor: self.parallel.pair_factor(sizes, (i, j)),
             shift: shift * (f64::from(raised(j)) - f64::from(raised(i))),
         });
         Ok(Box::new(MeansTrial {
             sizes: sizes.per_group.iter().map(|n| *n as usize).collect(),
             df: self.degrees_of_freedom(sizes),
-            critical: self.family().steps(self.degrees_of_freedom(sizes), &as_numbers(sizes))?,
+            critical: self
+                .parallel
+                .family(&self.risk)
+                .steps(self.degrees_of_freedom(sizes), &as_numbers(sizes))?,
             two_sided: self.risk.risk.sides == Sides::Two,
             comparisons: comparisons.collect::<Vec<_>>().into(),
             weakest,
@@ -495,7 +384,7 @@ impl Problem for Means {
         let at = self.planned();
         let mut comparisons = Vec::new();
         for &(i, j) in &self.parallel.pairs {
-            let factor = self.pair_factor(sizes, (i, j));
+            let factor = self.parallel.pair_factor(sizes, (i, j));
             let noncentrality = at.effect / (at.nuisance * factor);
             comparisons.push(json!({
                 "first": i,
@@ -504,7 +393,7 @@ impl Problem for Means {
                 "power": fixed.power_at(noncentrality)?,
             }));
         }
-        let weakest = self.weakest_pair(sizes);
+        let (weakest, _) = self.parallel.weakest_pair(sizes);
         let joint = self.joint_power(sizes, fixed.critical)?;
         let facts = json!({
             "compare": self.parallel.compare,
@@ -512,14 +401,14 @@ impl Problem for Means {
             "balanced": self.parallel.is_balanced(),
             "multiplicity": self.risk.multiplicity,
             "risk": self.risk,
-            "alpha_each": self.family().level(),
+            "alpha_each": self.parallel.family(&self.risk).level(),
             "rising": self.effect.planned.value > 0.0,
             "degrees_of_freedom": fixed.df,
             "critical": fixed.critical,
             "standardised": at.effect / at.nuisance,
             "weakest": weakest,
-            "noncentrality": at.effect / (at.nuisance * self.weakest_factor(sizes)),
-            "relative_factor_squared": self.relative_factor() * self.relative_factor(),
+            "noncentrality": at.effect / (at.nuisance * self.parallel.weakest_pair(sizes).1),
+            "relative_factor_squared": self.parallel.relative_factor() * self.parallel.relative_factor(),
             "comparisons": comparisons,
             "any_power": joint.map(|joint| joint.0),
             "all_power": joint.map(|joint| joint.1),
@@ -553,7 +442,7 @@ impl Means {
             .iter()
             .map(|&(c, i)| {
                 let loading = (size(i) / (size(i) + size(c))).sqrt();
-                (loading, at.effect / (at.nuisance * self.pair_factor(sizes, (c, i))))
+                (loading, at.effect / (at.nuisance * self.parallel.pair_factor(sizes, (c, i))))
             })
             .collect();
         let sides = joint_sides(self.risk.risk.sides);
